@@ -45,9 +45,9 @@ var pointerEscaper = strings.NewReplacer("~", "~0", "/", "~1")
 // reporter gathers problems. It stops formatting after MaxProblems and only
 // counts, so that a file with a million faults costs no more than a good one.
 type reporter struct {
-	list Problems
-	more int
-	bad  map[string]bool // pointers that have a problem
+	found Problems
+	more  int
+	bad   map[string]bool // pointers that have a problem
 }
 
 // maxBadPointers bounds the memory that remembering bad places may take.
@@ -61,12 +61,15 @@ func (r *reporter) add(pointer, format string, args ...any) {
 		}
 		r.bad[pointer] = true
 	}
-	if len(r.list) >= MaxProblems {
+	if len(r.found) >= MaxProblems {
 		r.more++
 		return
 	}
-	r.list = append(r.list, Problem{pointer, fmt.Sprintf(format, args...)})
+	r.found = append(r.found, Problem{pointer, fmt.Sprintf(format, args...)})
 }
+
+// count is how many problems there are so far.
+func (r *reporter) count() int { return len(r.found) + r.more }
 
 // isBad reports whether the place, or anything that holds it, already has a
 // problem: rules between values are not checked on values that are wrong in
@@ -89,10 +92,10 @@ func (r *reporter) isBad(pointer string) bool {
 
 // err is the finished list, or nil if there is nothing wrong.
 func (r *reporter) err() error {
-	if len(r.list) == 0 {
+	if len(r.found) == 0 {
 		return nil
 	}
-	list := r.list
+	list := r.found
 	if r.more > 0 {
 		noun := "problems"
 		if r.more == 1 {

@@ -1,0 +1,172 @@
+// Package timescale turns UTC instants into the scales that astronomy counts
+// in: TT, TDB and UT1 as Modified Julian Dates in two parts, and sidereal time.
+//
+// It covers 1972-01-01 (the start of UTC with leap seconds) to the end of 2099;
+// an instant outside is an error, never a number that is quietly wrong. From
+// 2017 on TAI-UTC is taken as 37 s: should a leap second be announced, the
+// table here must be extended.
+package timescale
+
+import (
+	"math"
+	"time"
+
+	"cadencewright/astro"
+	"cadencewright/astro/internal/meeus"
+)
+
+// TTMinusTAIS is TT-TAI in seconds, by definition (IAU 1991).
+const TTMinusTAIS = 32.184
+
+// mjdUnixEpoch is 1970-01-01T00:00 as MJD.
+const mjdUnixEpoch = 40587
+
+// First and Last bound the instants that can be used: First is included, Last
+// is not.
+var (
+	First = time.Date(1972, 1, 1, 0, 0, 0, 0, time.UTC)
+	Last  = time.Date(2100, 1, 1, 0, 0, 0, 0, time.UTC)
+)
+
+// leaps are the days from which TAI-UTC has a value, in seconds (IERS Bulletin
+// C). Before a leap second's end Go's clock repeats nothing: the second itself
+// cannot be named, and needs no name here.
+var leaps = []struct {
+	y    int
+	m    time.Month
+	taiS float64
+}{
+	{2017, 1, 37}, {2015, 7, 36}, {2012, 7, 35}, {2009, 1, 34}, {2006, 1, 33}, {1999, 1, 32}, {1997, 7, 31},
+	{1996, 1, 30}, {1994, 7, 29}, {1993, 7, 28}, {1992, 7, 27}, {1991, 1, 26}, {1990, 1, 25}, {1988, 1, 24},
+	{1985, 7, 23}, {1983, 7, 22}, {1982, 7, 21}, {1981, 7, 20}, {1980, 1, 19}, {1979, 1, 18}, {1978, 1, 17},
+	{1977, 1, 16}, {1976, 1, 15}, {1975, 1, 14}, {1974, 1, 13}, {1973, 1, 12}, {1972, 7, 11}, {1972, 1, 10},
+}
+
+// MJD is a Modified Julian Date in two parts, so that a microsecond survives:
+// a whole day and a fraction in [0, 1).
+type MJD struct {
+	Day  int
+	Frac float64
+}
+
+// NewMJD brings a day and any fraction into the normal form.
+func NewMJD(day int, frac float64) MJD {
+	whole := math.Floor(frac)
+	m := MJD{day + int(whole), frac - whole}
+	if m.Frac >= 1 { // a tiny negative fraction rounds up to a whole day
+		m.Day, m.Frac = m.Day+1, 0
+	}
+	return m
+}
+
+// Float is the date as one number, good to about a microsecond.
+func (m MJD) Float() float64 { return float64(m.Day) + m.Frac }
+
+// JD is the Julian Date as one number, good to about 40 microseconds.
+func (m MJD) JD() float64 { return 2400000.5 + float64(m.Day) + m.Frac }
+
+// AddS is the date some seconds later.
+func (m MJD) AddS(s float64) MJD { return NewMJD(m.Day, m.Frac+s/86400) }
+
+// DaysSince is the time in days since an epoch given as one number.
+func (m MJD) DaysSince(epochMJD float64) float64 {
+	whole := math.Floor(epochMJD)
+	return float64(m.Day-int(whole)) + (m.Frac - (epochMJD - whole))
+}
+
+// TAIMinusUTCS is TAI-UTC in seconds.
+func TAIMinusUTCS(t time.Time) (float64, error) {
+	t = t.UTC()
+	if t.Before(First) || !t.Before(Last) {
+		return 0, &astro.RangeError{Quantity: "instant", Value: t.Format(time.RFC3339),
+			Allowed: First.Format(time.DateOnly) + " to " + Last.AddDate(0, 0, -1).Format(time.DateOnly)}
+	}
+	y, m, _ := t.Date()
+	for _, l := range leaps {
+		if y > l.y || y == l.y && m >= l.m {
+			return l.taiS, nil
+		}
+	}
+	return 0, &astro.RangeError{Quantity: "instant", Value: t.Format(time.RFC3339), Allowed: "1972 or later"}
+}
+
+// UTC is the instant as a (quasi-)MJD of UTC, days of 86400 s.
+func UTC(t time.Time) MJD {
+	sec, ns := t.Unix(), t.Nanosecond()
+	day := sec / 86400
+	if sec%86400 < 0 {
+		day--
+	}
+	return NewMJD(mjdUnixEpoch+int(day), (float64(sec-day*86400)+float64(ns)*1e-9)/86400)
+}
+
+// TT is Terrestrial Time.
+func TT(t time.Time) (MJD, error) {
+	tai, err := TAIMinusUTCS(t)
+	if err != nil {
+		return MJD{}, err
+	}
+	return UTC(t).AddS(tai + TTMinusTAIS), nil
+}
+
+// TDBMinusTTS is TDB-TT at the Earth's centre in seconds, within 0.03 ms of
+// the full series in 2026-2030; tt is an MJD. Two terms of Fairhead and
+// Bretagnon 1990 (A&A 229, 240), as in the Astronomical Almanac.
+func TDBMinusTTS(tt float64) float64 {
+	g := (357.53 + 0.98560028*(tt-51544.5)) * math.Pi / 180
+	return 0.001657*math.Sin(g) + 0.000014*math.Sin(2*g)
+}
+
+// TDB is Barycentric Dynamical Time at the Earth's centre, within 0.03 ms.
+func TDB(t time.Time) (MJD, error) {
+	tt, err := TT(t)
+	if err != nil {
+		return MJD{}, err
+	}
+	return tt.AddS(TDBMinusTTS(tt.Float())), nil
+}
+
+// FromTDB is the UTC instant of a TDB at the Earth's centre, to a microsecond.
+func FromTDB(tdb MJD) (time.Time, error) {
+	tt := tdb.AddS(-TDBMinusTTS(tdb.Float()))
+	guess := fromUTC(tt)
+	tai, err := TAIMinusUTCS(guess)
+	if err != nil {
+		return time.Time{}, err
+	}
+	// Once more, for instants within a minute of a leap second.
+	tai, err = TAIMinusUTCS(fromUTC(tt.AddS(-tai - TTMinusTAIS)))
+	if err != nil {
+		return time.Time{}, err
+	}
+	return fromUTC(tt.AddS(-tai - TTMinusTAIS)), nil
+}
+
+func fromUTC(m MJD) time.Time {
+	return time.Unix(int64(m.Day-mjdUnixEpoch)*86400, 0).UTC().Add(time.Duration(math.Round(m.Frac * 86400e6)) * time.Microsecond)
+}
+
+// UT1 is the Earth's rotation as a time; dut1S is UT1-UTC in seconds.
+func UT1(t time.Time, dut1S float64) (MJD, error) {
+	if _, err := TAIMinusUTCS(t); err != nil {
+		return MJD{}, err
+	}
+	return UTC(t).AddS(dut1S), nil
+}
+
+// GAST is Greenwich apparent sidereal time, within 6 ms of the IAU 2006/2000A
+// value (IAU 1982 mean sidereal time with IAU 1980 nutation); dut1S is UT1-UTC
+// in seconds.
+func GAST(t time.Time, dut1S float64) (astro.Angle, error) {
+	ut1, err := UT1(t, dut1S)
+	if err != nil {
+		return 0, err
+	}
+	return meeus.ApparentSidereal(ut1.JD()), nil
+}
+
+// LST is local apparent sidereal time at an east-positive longitude, [0, 2π).
+func LST(t time.Time, dut1S float64, lon astro.Angle) (astro.Angle, error) {
+	g, err := GAST(t, dut1S)
+	return (g + lon).Wrap(), err
+}

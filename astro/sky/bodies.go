@@ -1,0 +1,96 @@
+package sky
+
+import (
+	"math"
+	"time"
+
+	"cadencewright/astro"
+	"cadencewright/astro/internal/meeus"
+	"cadencewright/astro/timescale"
+)
+
+// Body is where the Sun or the Moon stands, apparent and geocentric: true
+// equator and equinox of date.
+type Body struct {
+	RADeg, DecDeg float64
+	DistanceKm    float64 // from the Earth's centre, geometric
+}
+
+// DistanceAU is the distance in astronomical units.
+func (b Body) DistanceAU() float64 { return b.DistanceKm / meeus.AUKm }
+
+// Sun is the apparent Sun, within 10 arcsec.
+func Sun(t time.Time) (Body, error) {
+	tt, err := timescale.TT(t)
+	if err != nil {
+		return Body{}, err
+	}
+	f := newFrame(tt)
+	return Body{RADeg: f.sun.Lon().Deg(), DecDeg: f.sun.Lat().Deg(),
+		DistanceKm: meeus.SunEcliptic(tt.JD()).Norm() * meeus.AUKm}, nil
+}
+
+// Moon is the apparent Moon, within 10 arcsec and 10 km. The series already
+// holds light time; annual aberration does not move a body that moves along.
+func Moon(t time.Time) (Body, error) {
+	tt, err := timescale.TT(t)
+	if err != nil {
+		return Body{}, err
+	}
+	v := moonTrue(tt)
+	return Body{RADeg: v.Lon().Deg(), DecDeg: v.Lat().Deg(), DistanceKm: v.Norm()}, nil
+}
+
+// moonTrue is the vector to the Moon in km, true equator and equinox of date.
+func moonTrue(tt timescale.MJD) astro.Vec3 {
+	jde := tt.JD()
+	dpsi, deps, eps := meeus.Nutation(jde)
+	n := astro.RotX(-(eps + deps)).Mul(astro.RotZ(-dpsi))
+	return n.Apply(meeus.MoonEcliptic(jde))
+}
+
+// BodyOver is a body over a site, the parallax of the site included.
+type BodyOver struct {
+	AzDeg, ElDeg float64
+	DistanceKm   float64 // from the site
+}
+
+// SunOver is the Sun over a site.
+func SunOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
+	b, err := Sun(t)
+	if err != nil {
+		return BodyOver{}, err
+	}
+	return b.over(site, t, dut1S)
+}
+
+// MoonOver is the Moon over a site.
+func MoonOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
+	b, err := Moon(t)
+	if err != nil {
+		return BodyOver{}, err
+	}
+	return b.over(site, t, dut1S)
+}
+
+func (b Body) over(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
+	lst, err := timescale.LST(t, dut1S, site.Lon)
+	if err != nil {
+		return BodyOver{}, err
+	}
+	body := astro.Spherical(astro.FromDeg(b.RADeg), astro.FromDeg(b.DecDeg)).Scale(b.DistanceKm)
+	from := body.Add(siteVector(site, lst).Scale(-1))
+	p := over(from.Unit(), lst, site.Lat)
+	return BodyOver{AzDeg: p.AzDeg, ElDeg: p.ElDeg, DistanceKm: from.Norm()}, nil
+}
+
+// siteVector is a site from the Earth's centre in km, in the frame of the true
+// equator and equinox of date (WGS84; polar motion left out).
+func siteVector(site astro.Geodetic, lst astro.Angle) astro.Vec3 {
+	const a, f = 6378.137, 1 / 298.257223563
+	sinPhi, cosPhi := math.Sincos(float64(site.Lat))
+	c := a / math.Sqrt(cosPhi*cosPhi+(1-f)*(1-f)*sinPhi*sinPhi)
+	h := site.HeightM / 1000
+	rho := (c + h) * cosPhi
+	return astro.Vec3{rho * lst.Cos(), rho * lst.Sin(), ((1-f)*(1-f)*c + h) * sinPhi}
+}

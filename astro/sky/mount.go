@@ -1,0 +1,86 @@
+package sky
+
+import (
+	"math"
+	"slices"
+)
+
+// MaskPoint is a corner of a horizon mask.
+type MaskPoint struct {
+	AzDeg float64 // [0, 360)
+	ElDeg float64
+}
+
+// Mask is a horizon, piecewise linear in azimuth and wrapping at 360 degrees,
+// its points in ascending azimuth. An empty mask is no obstruction.
+type Mask []MaskPoint
+
+// ElevationDeg is the horizon's elevation at an azimuth; -90 for an empty mask.
+func (m Mask) ElevationDeg(azDeg float64) float64 {
+	if len(m) == 0 {
+		return -90
+	}
+	azDeg -= 360 * math.Floor(azDeg/360)
+	i, _ := slices.BinarySearchFunc(m, azDeg, func(p MaskPoint, az float64) int {
+		if p.AzDeg <= az {
+			return -1
+		}
+		return 1
+	}) // the first point beyond the azimuth
+	before, after := m[(i+len(m)-1)%len(m)], m[i%len(m)]
+	width := after.AzDeg - before.AzDeg
+	if width <= 0 {
+		width += 360
+	}
+	way := azDeg - before.AzDeg
+	if way < 0 {
+		way += 360
+	}
+	return before.ElDeg + (after.ElDeg-before.ElDeg)*way/width
+}
+
+// Axis is one drive of a mount.
+type Axis struct {
+	RateDegS   float64 // above 0
+	AccelDegS2 float64 // 0: reaches its rate at once
+}
+
+// Seconds is the time the drive takes for a travel, from rest to rest.
+func (a Axis) Seconds(travelDeg float64) float64 {
+	d := math.Abs(travelDeg)
+	switch {
+	case a.AccelDegS2 <= 0:
+		return d / a.RateDegS
+	case d < a.RateDegS*a.RateDegS/a.AccelDegS2: // never reaches its rate
+		return 2 * math.Sqrt(d/a.AccelDegS2)
+	default:
+		return d/a.RateDegS + a.RateDegS/a.AccelDegS2
+	}
+}
+
+// UnwrapDeg makes an azimuth track continuous, taking the shorter way from
+// each sample to the next. It writes to dst where that is long enough.
+func UnwrapDeg(az, dst []float64) []float64 {
+	if cap(dst) < len(az) {
+		dst = make([]float64, len(az))
+	}
+	dst = dst[:len(az)]
+	turns := 0.0
+	for i, a := range az {
+		if i > 0 {
+			turns -= 360 * math.Round((a-az[i-1])/360)
+		}
+		dst[i] = a + turns
+	}
+	return dst
+}
+
+// MotorTurns are the whole turns by which a continuous azimuth path between
+// two extremes can be shifted to stay inside a motor's range: all from lo to
+// hi, none where lo > hi.
+func MotorTurns(pathLoDeg, pathHiDeg float64, rangeDeg [2]float64) (lo, hi int) {
+	const rounding = 1e-12 // a path that just touches its range is inside
+	lo = int(math.Ceil((rangeDeg[0]-pathLoDeg)/360 - rounding))
+	hi = int(math.Floor((rangeDeg[1]-pathHiDeg)/360 + rounding))
+	return lo, hi
+}

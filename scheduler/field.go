@@ -191,7 +191,7 @@ func (t *table) complete(r *fileReader, obj any, seen uint64) {
 			r.leave()
 		case !present && belongs && f.need:
 			r.enterKey(f.key)
-			r.bad("%s is missing from %s%s", f.key, t.what, t.forSelected(f, selected))
+			r.bad("%s is missing%s", f.key, t.forSelected(f, selected))
 			r.leave()
 		case !present && f.derived != nil:
 			*f.at(obj).(*float64) = f.derived(obj)
@@ -210,7 +210,7 @@ func (t *table) forSelected(f *field, selected string) string {
 	if f.only == "" {
 		return ""
 	}
-	return " with " + t.selector + " " + selected
+	return "; " + t.selector + " " + selected + " needs it"
 }
 
 // check applies every field's rule to a struct.

@@ -59,7 +59,8 @@ func (c *checker) bad(format string, args ...any) { c.add(c.pointer(), format, a
 // fileReader is a checker that takes its values from a file.
 type fileReader struct {
 	checker
-	lex *strictjson.Lexer
+	lex   *strictjson.Lexer
+	names map[string]string // strings seen, see intern
 	// brokenAt is the place where the file stopped being JSON.
 	brokenAt string
 	broken   bool
@@ -158,7 +159,28 @@ func (r *fileReader) text(want string) (string, bool) {
 	if !r.expect(strictjson.String, want) {
 		return "", false
 	}
-	return r.lex.String()
+	b, ok := r.lex.Text()
+	if !ok {
+		return "", false
+	}
+	return r.intern(b), true
+}
+
+// intern makes a string of bytes, one and the same for all that are equal: a
+// long history names few sources many times.
+func (r *fileReader) intern(b []byte) string {
+	const mostNames, longest = 50000, 64
+	if s, ok := r.names[string(b)]; ok {
+		return s
+	}
+	s := string(b)
+	if len(s) <= longest && len(r.names) < mostNames {
+		if r.names == nil {
+			r.names = map[string]string{}
+		}
+		r.names[s] = s
+	}
+	return s
 }
 
 // suggest proposes the name that was probably meant, as an end of a sentence,

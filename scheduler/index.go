@@ -1,9 +1,6 @@
 package scheduler
 
-import (
-	"sort"
-	"time"
-)
+import "time"
 
 // TelescopeByCode is the telescope with the code, or nil.
 func (c *Campaign) TelescopeByCode(code string) *Telescope {
@@ -194,22 +191,6 @@ func contains(list []string, s string) bool {
 // minutes is a number of minutes as a duration, to the millisecond.
 func minutes(m float64) time.Duration {
 	return time.Duration(m*60000+0.5) * time.Millisecond
-}
-
-// sortBlocks orders blocks by start, then telescope, then id.
-func sortBlocks(list []*Block) {
-	sort.SliceStable(list, func(i, j int) bool { return blockLess(list[i], list[j]) })
-}
-
-// blockLess is the canonical order of blocks.
-func blockLess(a, b *Block) bool {
-	if !a.Start.Equal(b.Start) {
-		return a.Start.Before(b.Start)
-	}
-	if a.Telescope != b.Telescope {
-		return a.Telescope < b.Telescope
-	}
-	return a.ID < b.ID
 }
 
 // loadZone finds an IANA time zone. "Local" and "" mean no place on Earth and

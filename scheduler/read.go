@@ -110,7 +110,8 @@ func thingAt(c *Campaign, pointer string) string {
 	case "telescopes":
 		t := pick(len(c.Telescopes), func() string { return c.Telescopes[i].Code }, "telescope ")
 		if len(parts) > 4 && parts[3] == "receivers" && t != "" {
-			if j, err := strconv.Atoi(parts[4]); err == nil && j < len(c.Telescopes[i].Receivers) {
+			j, err := strconv.Atoi(parts[4])
+			if err == nil && j < len(c.Telescopes[i].Receivers) && c.Telescopes[i].Receivers[j].Code != "" {
 				return t + ", receiver " + c.Telescopes[i].Receivers[j].Code
 			}
 		}

@@ -8,7 +8,7 @@ import (
 // Ranges. Those that the planning model states are exact; the others only keep
 // out what cannot be physical, which mostly is a value in another unit.
 var (
-	anyMJD      = within(15020, 88069, "(a modified Julian date of the years 1900 to 2099)").hinting("MJD = JD - 2400000.5")
+	anyMJD      = within(15020, 88069, "").hinting("a modified Julian date of the years 1900 to 2099; MJD = JD - 2400000.5")
 	seconds     = within(0, 86400, "s")
 	rate        = above(0, 100, "degrees/s")
 	accel       = above(0, 1000, "degrees/s²")
@@ -30,15 +30,15 @@ const (
 var campaignFile = table{what: "a campaign file", lines: true, fields: []field{
 	{key: "format", need: must, kind: literal(CampaignFormat), doc: "format of this file"},
 	{key: "campaign", need: must, kind: nested{&campaignHead}, at: at(func(c *Campaign) *Campaign { return c }), doc: "the campaign itself"},
-	{key: "telescopes", kind: list[Telescope]{&telescopeTable, 0, MaxTelescopes}, at: at(func(c *Campaign) *[]Telescope { return &c.Telescopes })},
-	{key: "sources", kind: list[Source]{&sourceTable, 0, MaxSources}, at: at(func(c *Campaign) *[]Source { return &c.Sources })},
-	{key: "cadence_targets", kind: list[CadenceTarget]{&cadenceTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]CadenceTarget { return &c.CadenceTargets })},
-	{key: "phase_goals", kind: list[PhaseGoal]{&phaseTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]PhaseGoal { return &c.PhaseGoals })},
-	{key: "overlap_goals", kind: list[OverlapGoal]{&overlapTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]OverlapGoal { return &c.OverlapGoals })},
-	{key: "band_pair_goals", kind: list[BandPairGoal]{&pairTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]BandPairGoal { return &c.BandPairGoals })},
-	{key: "blocks", kind: list[Block]{&blockTable, 0, MaxBlocks}, at: at(func(c *Campaign) *[]Block { return &c.Blocks })},
-	{key: "history", kind: list[HistoryScan]{&historyTable, 0, MaxHistory}, at: at(func(c *Campaign) *[]HistoryScan { return &c.History })},
-	{key: "pins", kind: list[Pin]{&pinTable, 0, MaxPins}, at: at(func(c *Campaign) *[]Pin { return &c.Pins })},
+	{key: "telescopes", kind: list[Telescope]{&telescopeTable, 0, MaxTelescopes}, at: at(func(c *Campaign) *[]Telescope { return &c.Telescopes }), doc: "the telescopes"},
+	{key: "sources", kind: list[Source]{&sourceTable, 0, MaxSources}, at: at(func(c *Campaign) *[]Source { return &c.Sources }), doc: "the pulsars"},
+	{key: "cadence_targets", kind: list[CadenceTarget]{&cadenceTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]CadenceTarget { return &c.CadenceTargets }), doc: "goals of one scan every so often"},
+	{key: "phase_goals", kind: list[PhaseGoal]{&phaseTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]PhaseGoal { return &c.PhaseGoals }), doc: "goals of scans at places of an orbit"},
+	{key: "overlap_goals", kind: list[OverlapGoal]{&overlapTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]OverlapGoal { return &c.OverlapGoals }), doc: "goals of several telescopes at once"},
+	{key: "band_pair_goals", kind: list[BandPairGoal]{&pairTable, 0, MaxGoals}, at: at(func(c *Campaign) *[]BandPairGoal { return &c.BandPairGoals }), doc: "goals of two bands near in time"},
+	{key: "blocks", kind: list[Block]{&blockTable, 0, MaxBlocks}, at: at(func(c *Campaign) *[]Block { return &c.Blocks }), doc: "awarded stretches of telescope time; those of one telescope do not overlap"},
+	{key: "history", kind: list[HistoryScan]{&historyTable, 0, MaxHistory}, at: at(func(c *Campaign) *[]HistoryScan { return &c.History }), doc: "scans that were made"},
+	{key: "pins", kind: list[Pin]{&pinTable, 0, MaxPins}, at: at(func(c *Campaign) *[]Pin { return &c.Pins }), doc: "scans that must stand in the plan as they are"},
 }}
 
 // campaignHead is the object "campaign".

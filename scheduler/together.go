@@ -1,7 +1,7 @@
 package scheduler
 
 import (
-	"sort"
+	"slices"
 	"strconv"
 	"strings"
 	"time"
@@ -52,13 +52,13 @@ func (t *together) fault(places []string, format string, args ...any) {
 }
 
 // unique reports names that stand twice in a list and returns where each name
-// first stands.
-func (t *together) unique(n int, key, thing string, name func(int) string, at func(i int) string) map[string]int {
+// first stands. at is the place of an item's name.
+func (t *together) unique(n int, key string, name, at func(i int) string) map[string]int {
 	first := make(map[string]int, n)
 	for i := range n {
 		v := name(i)
 		if j, twice := first[v]; twice && v != "" {
-			t.fault([]string{at(i)}, "%s %s is the %s of an earlier %s too (number %d); it must be unique", key, quote(v), key, thing, j)
+			t.fault([]string{at(i)}, "%s %s stands at %s already; it must be unique", key, quote(v), at(j))
 		} else {
 			first[v] = i
 		}
@@ -81,7 +81,7 @@ func (t *together) head() {
 // telescopes checks limits against each other, zones and receivers.
 func (t *together) telescopes() {
 	list := t.c.Telescopes
-	t.telescopeAt = t.unique(len(list), "code", "telescope", func(i int) string { return list[i].Code },
+	t.telescopeAt = t.unique(len(list), "code", func(i int) string { return list[i].Code },
 		func(i int) string { return place("telescopes", i, "code") })
 	for i := range list {
 		tel := &list[i]
@@ -93,7 +93,7 @@ func (t *together) telescopes() {
 		if _, err := loadZone(tel.Timezone); err != nil {
 			t.fault([]string{place("telescopes", i, "timezone")}, "%v", err)
 		}
-		t.unique(len(tel.Receivers), "code", "receiver of the telescope", func(j int) string { return tel.Receivers[j].Code },
+		t.unique(len(tel.Receivers), "code", func(j int) string { return tel.Receivers[j].Code },
 			func(j int) string { return place("telescopes", i, "receivers", strconv.Itoa(j), "code") })
 		codes := map[string]bool{}
 		for j := range tel.Receivers {
@@ -114,7 +114,7 @@ func (t *together) telescopes() {
 // sources checks pulse widths and that scan lengths fit the grid.
 func (t *together) sources() {
 	list := t.c.Sources
-	t.sourceAt = t.unique(len(list), "name", "source", func(i int) string { return list[i].Name },
+	t.sourceAt = t.unique(len(list), "name", func(i int) string { return list[i].Name },
 		func(i int) string { return place("sources", i, "name") })
 	grid := t.c.GridMin
 	for i := range list {
@@ -144,7 +144,7 @@ func (t *together) goals() {
 	t.c.EachGoal(func(kind GoalKind, i int, g *Goal) {
 		at := place(goalLists[kind], i)
 		if p, twice := first[g.ID]; twice && g.ID != "" {
-			t.fault([]string{at + "/id"}, "id %s is the id of the goal at %s too; ids are unique over all four lists", quote(g.ID), p)
+			t.fault([]string{at + "/id"}, "id %s stands at %s/id already; it must be unique over all four lists", quote(g.ID), p)
 		} else {
 			first[g.ID] = at
 		}
@@ -173,7 +173,7 @@ func (t *together) goals() {
 // refers reports a name that no thing has.
 func (t *together) refers(at, thing, name string, known map[string]int, names func() []string) {
 	if _, ok := known[name]; !ok {
-		t.fault([]string{at}, "there is no %s %s%s", thing, quote(name), t.suggest(name, names()))
+		t.fault([]string{at, "/" + thing + "s"}, "there is no %s %s%s", thing, quote(name), t.suggest(name, names()))
 	}
 }
 
@@ -217,7 +217,7 @@ func (t *together) pair(at string, g *BandPairGoal) {
 // blocks checks references, lengths, lost parts and overlaps.
 func (t *together) blocks() {
 	list := t.c.Blocks
-	t.blockAt = t.unique(len(list), "id", "block", func(i int) string { return list[i].ID },
+	t.blockAt = t.unique(len(list), "id", func(i int) string { return list[i].ID },
 		func(i int) string { return place("blocks", i, "id") })
 	byTelescope := map[string][]int{}
 	for i := range list {
@@ -258,20 +258,20 @@ func (t *together) blockTimes(i int, b *Block) {
 }
 
 // overlaps reports blocks of one telescope that share time; of two, the later
-// in the file is named.
+// in the file is named. Blocks whose times are wrong in themselves are left
+// out.
 func (t *together) overlaps(of []int) {
 	list := t.c.Blocks
-	sort.SliceStable(of, func(a, b int) bool { return list[of[a]].Start.Before(list[of[b]].Start) })
+	of = slices.DeleteFunc(of, func(i int) bool {
+		return t.isBad(place("blocks", i, "start")) || t.isBad(place("blocks", i, "end"))
+	})
+	slices.SortStableFunc(of, func(a, b int) int { return list[a].Start.Compare(list[b].Start) })
 	longest := -1 // the block that ends last so far
 	for _, i := range of {
-		if !list[i].Start.Before(list[i].End) {
-			continue
-		}
 		if longest >= 0 && list[i].Start.Before(list[longest].End) {
 			later, earlier := max(i, longest), min(i, longest)
-			t.fault([]string{place("blocks", later, "start"), place("blocks", later, "end"), place("blocks", earlier, "start"), place("blocks", earlier, "end")},
-				"the block, %s, overlaps block %s of the same telescope, %s", spanText(list[later].Start, list[later].End),
-				list[earlier].ID, spanText(list[earlier].Start, list[earlier].End))
+			t.add(place("blocks", later, "start"), "the block, %s, overlaps block %s of the same telescope, %s",
+				spanText(list[later].Start, list[later].End), list[earlier].ID, spanText(list[earlier].Start, list[earlier].End))
 		}
 		if longest < 0 || list[i].End.After(list[longest].End) {
 			longest = i
@@ -282,16 +282,15 @@ func (t *together) overlaps(of []int) {
 // receiver reports a receiver that its telescope does not have.
 func (t *together) receiver(at, telescope, code string) {
 	have := t.receivers[telescope]
-	if have == nil || have[code] {
-		return // an unknown telescope is reported already
+	if have == nil || have[code] || have[""] {
+		return // an unknown telescope or a receiver without a code is reported already
 	}
+	i := t.telescopeAt[telescope]
 	var names []string
-	if tel := t.c.TelescopeByCode(telescope); tel != nil {
-		for _, r := range tel.Receivers {
-			names = append(names, r.Code)
-		}
+	for _, r := range t.c.Telescopes[i].Receivers {
+		names = append(names, r.Code)
 	}
-	t.fault([]string{at}, "telescope %s has no receiver %s; it has %s", telescope, quote(code), strings.Join(names, ", "))
+	t.fault([]string{at, place("telescopes", i, "receivers")}, "telescope %s has no receiver %s; it has %s", telescope, quote(code), strings.Join(names, ", "))
 }
 
 // history checks references.

@@ -2,6 +2,7 @@ package scheduler
 
 import (
 	"fmt"
+	"slices"
 	"time"
 )
 
@@ -83,6 +84,6 @@ func (h Horizon) Blocks(c *Campaign) []*Block {
 			in = append(in, &c.Blocks[i])
 		}
 	}
-	sortBlocks(in)
+	slices.SortStableFunc(in, func(a, b *Block) int { return compareBlocks(*a, *b) })
 	return in
 }

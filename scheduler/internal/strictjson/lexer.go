@@ -7,7 +7,7 @@
 // error.
 //
 // The caller walks the document: Kind looks at the next value, BeginObject,
-// NextKey, BeginArray, NextItem, String, Number, Bool, Null and Skip consume.
+// NextKey, BeginArray, NextItem, Text, Number, Bool, Null and Skip consume.
 // The first syntax error sticks: from then on everything answers false or
 // zero, and Err tells what it was.
 package strictjson

@@ -6,14 +6,13 @@ import (
 	"unicode/utf8"
 )
 
-// String reads a string.
-func (x *Lexer) String() (string, bool) {
+// Text reads a string. The bytes are valid until the next call.
+func (x *Lexer) Text() ([]byte, bool) {
 	if x.Kind() != String {
 		x.fail(x.pos, "a string is expected here, not %s", x.found())
-		return "", false
+		return nil, false
 	}
-	b, ok := x.text()
-	return string(b), ok
+	return x.text()
 }
 
 // text reads a string at the present place. The bytes lie in the document

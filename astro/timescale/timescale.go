@@ -143,7 +143,7 @@ func FromTDB(tdb MJD) (time.Time, error) {
 }
 
 func fromUTC(m MJD) time.Time {
-	return time.Unix(int64(m.Day-mjdUnixEpoch)*86400, 0).UTC().Add(time.Duration(math.Round(m.Frac * 86400e6)) * time.Microsecond)
+	return time.Unix(int64(m.Day-mjdUnixEpoch)*86400, 0).UTC().Add(time.Duration(math.Round(m.Frac*86400e6)) * time.Microsecond)
 }
 
 // UT1 is the Earth's rotation as a time; dut1S is UT1-UTC in seconds.

@@ -59,17 +59,19 @@ func (a Axis) Seconds(travelDeg float64) float64 {
 }
 
 // UnwrapDeg makes an azimuth track continuous, taking the shorter way from
-// each sample to the next. It writes to dst where that is long enough.
+// each sample to the next. It writes to dst where that is long enough, which
+// may be az itself.
 func UnwrapDeg(az, dst []float64) []float64 {
 	if cap(dst) < len(az) {
 		dst = make([]float64, len(az))
 	}
 	dst = dst[:len(az)]
-	turns := 0.0
+	turns, before := 0.0, 0.0
 	for i, a := range az {
 		if i > 0 {
-			turns -= 360 * math.Round((a-az[i-1])/360)
+			turns -= 360 * math.Round((a-before)/360)
 		}
+		before = a
 		dst[i] = a + turns
 	}
 	return dst

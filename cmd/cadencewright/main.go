@@ -12,6 +12,7 @@ import (
 	"os"
 	"os/signal"
 	"syscall"
+	_ "time/tzdata" // telescopes' zones, on machines that have none
 )
 
 func main() {

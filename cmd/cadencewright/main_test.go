@@ -4,6 +4,8 @@ import (
 	"testing"
 
 	"github.com/rogpeppe/go-internal/testscript"
+
+	"cadencewright/testdata"
 )
 
 // TestMain lets the scripts below testdata/script run this test binary as
@@ -20,5 +22,9 @@ func TestScripts(t *testing.T) {
 		RequireExplicitExec: true,
 		RequireUniqueNames:  true,
 		Cmds:                scriptCommands,
+		Setup: func(e *testscript.Env) error {
+			e.Setenv("CAMPAIGNS", testdata.Path("campaigns"))
+			return nil
+		},
 	})
 }

@@ -123,8 +123,14 @@ func (o *Orbit) Series(from, to time.Time, step time.Duration) ([]OrbitState, er
 	return list, nil
 }
 
-// points are the three reference points.
-var points = []scheduler.PhaseReference{scheduler.RefPeriastron, scheduler.RefNode, scheduler.RefConjunction}
+// points are the reference points that the orbit has: a circle has no
+// periastron.
+func (o *Orbit) points() []scheduler.PhaseReference {
+	if o.elements.Ecc == 0 {
+		return []scheduler.PhaseReference{scheduler.RefNode, scheduler.RefConjunction}
+	}
+	return []scheduler.PhaseReference{scheduler.RefPeriastron, scheduler.RefNode, scheduler.RefConjunction}
+}
 
 // Next are the first n passages of each reference point after t, all in time
 // order; fewer where the years that can be computed end.
@@ -133,7 +139,7 @@ func (o *Orbit) Next(after time.Time, n int) ([]OrbitEvent, error) {
 		return nil, err
 	}
 	var list []OrbitEvent
-	for _, p := range points {
+	for _, p := range o.points() {
 		t := after
 		for range n {
 			ev, err := o.elements.Next(p.Point(), o.star, t)
@@ -159,7 +165,7 @@ func (o *Orbit) Events(from, to time.Time) ([]OrbitEvent, error) {
 		return nil, err
 	}
 	var list []OrbitEvent
-	for _, p := range points {
+	for _, p := range o.points() {
 		events, err := o.clock.Events(o.elements, p.Point(), from, to)
 		if err != nil {
 			return nil, fmt.Errorf("source %s: %w", o.source.Name, err)

@@ -162,3 +162,21 @@ func TestNextEndsWithTheTimeScales(t *testing.T) {
 		t.Error("2101: want an error")
 	}
 }
+
+func TestACircleHasNoPeriastron(t *testing.T) {
+	src := &scheduler.Source{Name: "SIM J0000+0000", PosEpochMJD: 51544.5,
+		Binary: &scheduler.Binary{Model: scheduler.BinaryELL1, PbD: 1.5, A1Ls: 1, TascMJD: 60000}}
+	at := time.Date(2027, 1, 1, 0, 0, 0, 0, time.UTC)
+	o, err := NewOrbit(src, at, at.AddDate(0, 0, 3))
+	if err != nil {
+		t.Fatal(err)
+	}
+	next, err := o.Next(at, 1)
+	if err != nil || len(next) != 2 {
+		t.Errorf("next: got %v, %v; want a node and a conjunction", next, err)
+	}
+	events, err := o.Events(at, at.AddDate(0, 0, 3))
+	if err != nil || len(events) != 4 || slices.ContainsFunc(events, func(e OrbitEvent) bool { return e.Point == scheduler.RefPeriastron }) {
+		t.Errorf("three days: got %v, %v", events, err)
+	}
+}

@@ -62,7 +62,8 @@ func TestProblemsError(t *testing.T) {
 func TestReporterKnowsBadPlaces(t *testing.T) {
 	var r reporter
 	r.add("/blocks/1", "x")
-	for at, want := range map[string]bool{"/blocks/1": true, "/blocks/1/start": true, "/blocks/1/lost/0/1": true, "/blocks/10": false, "/blocks": false, "": false} {
+	for at, want := range map[string]bool{"/blocks/1": true, "/blocks/1/start": true, "/blocks/1/lost/0/1": true,
+		"/blocks/10": false, "/blocks": false, "": false} {
 		if r.isBad(at) != want {
 			t.Errorf("isBad(%q) is %v", at, !want)
 		}
@@ -72,7 +73,8 @@ func TestReporterKnowsBadPlaces(t *testing.T) {
 func TestSuggest(t *testing.T) {
 	names := []string{"azimuth_range_deg", "rate_az_deg_s", "mount", "SIM J0412+1833", "ab"}
 	for got, want := range map[string]string{
-		"azimut_range_deg": "azimuth_range_deg", "rate_ax_deg_s": "rate_az_deg_s", "SIM J0412-1833": "SIM J0412+1833", "azimuth_range": "azimuth_range_deg",
+		"azimut_range_deg": "azimuth_range_deg", "rate_ax_deg_s": "rate_az_deg_s", "SIM J0412-1833": "SIM J0412+1833",
+		"azimuth_range":    "azimuth_range_deg",
 		"wholly different": "", "aa": "ab", "zz": "", strings.Repeat("x", 5000): "",
 	} {
 		var r reporter

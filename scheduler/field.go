@@ -78,10 +78,24 @@ type table struct {
 	lines bool
 }
 
-// at wraps a typed accessor of a Go field.
-func at[T, F any](get func(*T) *F) func(any) any {
-	return func(obj any) any { return get(obj.(*T)) }
+// req is a field that must be present; get finds it in its struct, doc says its
+// meaning and unit.
+func req[T, F any](key string, k kind, get func(*T) *F, doc string) field {
+	return field{key: key, need: true, kind: k, at: func(obj any) any { return get(obj.(*T)) }, doc: doc}
 }
+
+// opt is a field that may be absent.
+func opt[T, F any](key string, k kind, get func(*T) *F, doc string) field {
+	f := req(key, k, get, doc)
+	f.need = false
+	return f
+}
+
+// onlyFor makes the field belong to some values of the table's selector.
+func (f field) onlyFor(choices string) field { f.only = choices; return f }
+
+// orElse makes the default of an absent number depend on other fields.
+func (f field) orElse(derived func(obj any) float64) field { f.derived = derived; return f }
 
 // find is the index of the field with the key, or -1; hint is where it is
 // expected, since files mostly keep one order.

@@ -28,10 +28,12 @@ func seeds(f *testing.F) {
 	for _, cut := range []int{0, 1, 30, 400, len(small) / 2, len(small) - 3} {
 		f.Add(small[:cut])
 	}
-	for _, r := range [][2]string{{"-", "-Infinity "}, {`"L1"`, "null"}, {"0", "1e999"}, {"{", "[{"}, {`"id"`, `"id": 1, "id"`}, {"2027", "0000"}} {
+	for _, r := range [][2]string{{"-", "-Infinity "}, {`"L1"`, "null"}, {"0", "1e999"}, {"{", "[{"},
+		{`"id"`, `"id": 1, "id"`}, {"2027", "0000"}} {
 		f.Add(bytes.ReplaceAll(small, []byte(r[0]), []byte(r[1])))
 	}
-	for _, s := range []string{"null", "{}", "[]", `{"format": "campaign/1", "campaign": null}`, `{"format": "plan/1", "certificate": {"prices": {"a#1": 1e-400}}}`} {
+	for _, s := range []string{"null", "{}", "[]", `{"format": "campaign/1", "campaign": null}`,
+		`{"format": "plan/1", "certificate": {"prices": {"a#1": 1e-400}}}`} {
 		f.Add([]byte(s))
 	}
 	f.Add([]byte(strings.Repeat(`{"sources":[`, 100)))

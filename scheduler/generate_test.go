@@ -13,7 +13,8 @@ import (
 func anyCampaign(t *rapid.T) *Campaign {
 	grid := rapid.SampledFrom([]int{1, 2, 5, 10}).Draw(t, "grid")
 	start := anyInstant(t)
-	c := &Campaign{Name: anyText(t), Start: start, End: start.Add(anyLength(t, MaxCampaign)), GridMin: grid, DUT1S: inRange(t, -1, 1)}
+	c := &Campaign{Name: anyText(t), Start: start, End: start.Add(anyLength(t, MaxCampaign)), GridMin: grid,
+		DUT1S: inRange(t, -1, 1)}
 	for i := range rapid.IntRange(0, 3).Draw(t, "telescopes") {
 		c.Telescopes = append(c.Telescopes, anyTelescope(t, fmt.Sprintf("T%d%s", i, anyText(t))))
 	}
@@ -56,10 +57,14 @@ func anyLength(t *rapid.T, most time.Duration) time.Duration {
 }
 
 func anyTelescope(t *rapid.T, code string) Telescope {
-	tel := Telescope{Code: code, Name: anyText(t), LongitudeDeg: inRange(t, -180, 360), LatitudeDeg: inRange(t, -90, 90), HeightM: inRange(t, -500, 9000),
-		Timezone: rapid.SampledFrom([]string{"UTC", "Europe/Berlin", "America/Argentina/Salta"}).Draw(t, "zone"), ElevationMinDeg: inRange(t, 0, 20), ElevationMaxDeg: inRange(t, 21, 90),
-		SunMinDeg: inRange(t, 0, 180), SetupS: inRange(t, 0, 86400), CalS: inRange(t, 0, 86400), SwitchS: inRange(t, 0, 86400), SettleS: inRange(t, 0, 86400)}
-	switch tel.Mount = rapid.SampledFrom([]MountKind{MountAltAz, MountEquatorial, MountTransit}).Draw(t, "mount"); tel.Mount {
+	tel := Telescope{Code: code, Name: anyText(t), LongitudeDeg: inRange(t, -180, 360),
+		LatitudeDeg: inRange(t, -90, 90), HeightM: inRange(t, -500, 9000),
+		Timezone:        rapid.SampledFrom([]string{"UTC", "Europe/Berlin", "America/Argentina/Salta"}).Draw(t, "zone"),
+		ElevationMinDeg: inRange(t, 0, 20), ElevationMaxDeg: inRange(t, 21, 90),
+		SunMinDeg: inRange(t, 0, 180), SetupS: inRange(t, 0, 86400), CalS: inRange(t, 0, 86400),
+		SwitchS: inRange(t, 0, 86400), SettleS: inRange(t, 0, 86400)}
+	switch tel.Mount = rapid.SampledFrom([]MountKind{MountAltAz, MountEquatorial, MountTransit}).Draw(t,
+		"mount"); tel.Mount {
 	case MountAltAz:
 		tel.AzimuthRangeDeg = [2]float64{inRange(t, -720, 0), inRange(t, 1, 720)}
 		tel.RateAzDegS, tel.RateElDegS, tel.AccelAzDegS2 = positive(t, 100), positive(t, 100), positive(t, 1000)
@@ -76,8 +81,10 @@ func anyTelescope(t *rapid.T, code string) Telescope {
 	}
 	for i := range rapid.IntRange(1, 3).Draw(t, "receivers") {
 		freq := inRange(t, 10, 1e6)
-		r := Receiver{Code: fmt.Sprintf("R%d", i), Bands: []string{"L"}, FreqMHz: freq, BandwidthMHz: inRange(t, 1e-3, 2*freq), NPol: rapid.IntRange(1, 2).Draw(t, "npol"),
-			TrecK: positive(t, 1e5), TatmK: inRange(t, 0, 1000), GainKPerJy: positive(t, 1e4), Digitisation: inRange(t, 1, 10)}
+		r := Receiver{Code: fmt.Sprintf("R%d", i), Bands: []string{"L"}, FreqMHz: freq,
+			BandwidthMHz: inRange(t, 1e-3, 2*freq), NPol: rapid.IntRange(1, 2).Draw(t, "npol"),
+			TrecK: positive(t, 1e5), TatmK: inRange(t, 0, 1000), GainKPerJy: positive(t, 1e4),
+			Digitisation: inRange(t, 1, 10)}
 		r.BandwidthMHz = min(r.BandwidthMHz, 1e6)
 		if rapid.Bool().Draw(t, "rfi") {
 			r.RFILoss = rapid.SliceOfN(rapid.Float64Range(0, 0.999), 24, 24).Draw(t, "loss")
@@ -89,8 +96,10 @@ func anyTelescope(t *rapid.T, code string) Telescope {
 }
 
 func anySource(t *rapid.T, name string, grid int) Source {
-	s := Source{Name: name, RADeg: inRange(t, 0, 360), DecDeg: inRange(t, -90, 90), PosEpochMJD: inRange(t, 15020, 88069), PMRAMasYr: inRange(t, -1e5, 1e5), PMDecMasYr: inRange(t, -1e5, 1e5),
-		PeriodS: positive(t, 100), DMPcCm3: inRange(t, 0, 1e5), FluxMJy: positive(t, 1e6), FluxFreqMHz: inRange(t, 10, 1e6), SpectralIdx: inRange(t, -10, 10),
+	s := Source{Name: name, RADeg: inRange(t, 0, 360), DecDeg: inRange(t, -90, 90),
+		PosEpochMJD: inRange(t, 15020, 88069), PMRAMasYr: inRange(t, -1e5, 1e5), PMDecMasYr: inRange(t, -1e5, 1e5),
+		PeriodS: positive(t, 100), DMPcCm3: inRange(t, 0, 1e5), FluxMJy: positive(t, 1e6),
+		FluxFreqMHz: inRange(t, 10, 1e6), SpectralIdx: inRange(t, -10, 10),
 		Scatter1GHzS: inRange(t, 0, 1000), JitterUs1h: inRange(t, 0, 1e9), SunMinDeg: inRange(t, 0, 180)}
 	s.WidthS = s.PeriodS * rapid.Float64Range(1e-4, 0.999).Draw(t, "duty")
 	m := 0
@@ -100,10 +109,13 @@ func anySource(t *rapid.T, name string, grid int) Source {
 	}
 	switch rapid.IntRange(0, 2).Draw(t, "binary") {
 	case 1:
-		s.Binary = &Binary{Model: BinaryKepler, PbD: inRange(t, 0.01, 1e6), A1Ls: inRange(t, 0, 1e6), Ecc: inRange(t, 0, 0.999), OmDeg: inRange(t, -360, 360), T0MJD: inRange(t, 15020, 88069),
-			OmdotDegYr: inRange(t, -3600, 3600), Pbdot: inRange(t, -1e-6, 1e-6), M2Msun: inRange(t, 0, 1000), Sini: inRange(t, 0, 1)}
+		s.Binary = &Binary{Model: BinaryKepler, PbD: inRange(t, 0.01, 1e6), A1Ls: inRange(t, 0, 1e6),
+			Ecc: inRange(t, 0, 0.999), OmDeg: inRange(t, -360, 360), T0MJD: inRange(t, 15020, 88069),
+			OmdotDegYr: inRange(t, -3600, 3600), Pbdot: inRange(t, -1e-6, 1e-6), M2Msun: inRange(t, 0, 1000),
+			Sini: inRange(t, 0, 1)}
 	case 2:
-		s.Binary = &Binary{Model: BinaryELL1, PbD: inRange(t, 0.01, 1e6), A1Ls: inRange(t, 0, 1e6), TascMJD: inRange(t, 15020, 88069), Eps1: inRange(t, -0.7, 0.7), Eps2: inRange(t, -0.7, 0.7)}
+		s.Binary = &Binary{Model: BinaryELL1, PbD: inRange(t, 0.01, 1e6), A1Ls: inRange(t, 0, 1e6),
+			TascMJD: inRange(t, 15020, 88069), Eps1: inRange(t, -0.7, 0.7), Eps2: inRange(t, -0.7, 0.7)}
 	}
 	return s
 }
@@ -124,15 +136,22 @@ func anyGoals(t *rapid.T, c *Campaign) {
 	for i := range c.Sources {
 		s := &c.Sources[i]
 		every := inRange(t, 0.04, 1e5)
-		c.CadenceTargets = append(c.CadenceTargets, CadenceTarget{goal(s, "L"), every, every * rapid.SampledFrom([]float64{0, 0.25, 0.3, 0.5}).Draw(t, "early"), rapid.SampledFrom([]float64{0, 0.5, 1e9}).Draw(t, "toa")})
-		c.BandPairGoals = append(c.BandPairGoals, BandPairGoal{goal(s, "U", "L"), min(1e5, every*12*rapid.Float64Range(0, 1).Draw(t, "within")), every})
+		c.CadenceTargets = append(c.CadenceTargets, CadenceTarget{goal(s, "L"), every,
+			every * rapid.SampledFrom([]float64{0, 0.25, 0.3, 0.5}).Draw(t, "early"),
+			rapid.SampledFrom([]float64{0, 0.5, 1e9}).Draw(t, "toa")})
+		c.BandPairGoals = append(c.BandPairGoals, BandPairGoal{goal(s, "U", "L"),
+			min(1e5, every*12*rapid.Float64Range(0, 1).Draw(t, "within")), every})
 		if len(c.Telescopes) > 1 {
-			c.OverlapGoals = append(c.OverlapGoals, OverlapGoal{goal(s, "L"), len(c.Telescopes), positive(t, 1e6), every})
+			c.OverlapGoals = append(c.OverlapGoals, OverlapGoal{goal(s, "L"), len(c.Telescopes), positive(t, 1e6),
+				every})
 		}
 		if s.Binary != nil {
 			from := rapid.Float64Range(0, 0.999).Draw(t, "from")
-			c.PhaseGoals = append(c.PhaseGoals, PhaseGoal{goal(s, "L"), rapid.SampledFrom([]PhaseReference{RefPeriastron, RefNode, RefConjunction}).Draw(t, "reference"),
-				[]PhaseWindow{{from, from + rapid.Float64Range(0.001, 1).Draw(t, "width"), rapid.IntRange(1, 9).Draw(t, "need")}}, positive(t, 1e6), rapid.IntRange(1, 1e6).Draw(t, "per horizon")})
+			c.PhaseGoals = append(c.PhaseGoals, PhaseGoal{goal(s, "L"),
+				rapid.SampledFrom([]PhaseReference{RefPeriastron, RefNode, RefConjunction}).Draw(t, "reference"),
+				[]PhaseWindow{{from, from + rapid.Float64Range(0.001, 1).Draw(t, "width"),
+					rapid.IntRange(1, 9).Draw(t, "need")}}, positive(t, 1e6),
+				rapid.IntRange(1, 1e6).Draw(t, "per horizon")})
 		}
 	}
 }
@@ -153,20 +172,24 @@ func anyBlocks(t *rapid.T, c *Campaign) {
 		c.Blocks = append(c.Blocks, b)
 		s := &c.Sources[i%len(c.Sources)]
 		grid := time.Duration(c.GridMin) * time.Minute
-		if p := (Pin{b.ID, s.Name, b.Receivers[0], b.Start.Add(grid).Truncate(grid), c.GridMin}); !p.End().After(b.End) {
+		if p := (Pin{b.ID, s.Name, b.Receivers[0], b.Start.Add(grid).Truncate(grid),
+			c.GridMin}); !p.End().After(b.End) {
 			c.Pins = append(c.Pins, p)
 		}
-		c.History = append(c.History, HistoryScan{s.Name, tel.Code, b.Receivers[0], b.Start.Add(-anyLength(t, MaxBlock)), positive(t, 20160), rapid.Bool().Draw(t, "counted")})
+		c.History = append(c.History, HistoryScan{s.Name, tel.Code, b.Receivers[0],
+			b.Start.Add(-anyLength(t, MaxBlock)), positive(t, 20160), rapid.Bool().Draw(t, "counted")})
 	}
 }
 
 // anyPlan draws a plan of any content.
 func anyPlan(t *rapid.T) *Plan {
-	p := &Plan{Campaign: anyText(t), From: anyInstant(t), Score: anyFinite(t), Possible: anyFinite(t), Bound: anyFinite(t)}
+	p := &Plan{Campaign: anyText(t), From: anyInstant(t), Score: anyFinite(t), Possible: anyFinite(t),
+		Bound: anyFinite(t)}
 	p.To = p.From.Add(anyLength(t, 56*24*time.Hour))
 	p.Certificate = Certificate{Prices: map[string]float64{}, Bound: anyFinite(t)}
 	for i := range rapid.IntRange(0, 4).Draw(t, "scans") {
-		s := Scan{Block: anyText(t), Telescope: anyText(t), Source: anyText(t), Receiver: anyText(t), Start: anyInstant(t), Minutes: rapid.IntRange(1, 20160).Draw(t, "minutes"),
+		s := Scan{Block: anyText(t), Telescope: anyText(t), Source: anyText(t), Receiver: anyText(t),
+			Start: anyInstant(t), Minutes: rapid.IntRange(1, 20160).Draw(t, "minutes"),
 			Pinned: rapid.Bool().Draw(t, "pinned"), TOAUs: positive(t, 1e6)}
 		if i%2 == 0 {
 			az := anyFinite(t)
@@ -174,7 +197,8 @@ func anyPlan(t *rapid.T) *Plan {
 			s.Earns = []Earning{{anyText(t), anyText(t) + "#1", anyFinite(t)}, {anyText(t), anyText(t) + "@0", 0}}
 		}
 		p.Scans = append(p.Scans, s)
-		p.Unmet = append(p.Unmet, Unmet{anyText(t), anyText(t), anyFinite(t), []Reason{{"never-up", anyText(t) + "\n" + anyText(t), i}}})
+		p.Unmet = append(p.Unmet, Unmet{anyText(t), anyText(t), anyFinite(t),
+			[]Reason{{"never-up", anyText(t) + "\n" + anyText(t), i}}})
 		p.Certificate.Prices[anyText(t)] = anyFinite(t)
 	}
 	return p

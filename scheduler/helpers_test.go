@@ -33,12 +33,19 @@ func everyField(t testing.TB) *Campaign {
 	return c
 }
 
+// fataler is what helpers need of an ordinary test or of a property.
+type fataler interface {
+	Helper()
+	Fatal(args ...any)
+	Fatalf(format string, args ...any)
+}
+
 // unset, as a new value, takes a key away.
-var unset = errors.New("unset")
+var unset = &struct{ string }{"unset"}
 
 // edited is a document with one value set, by JSON Pointer. A last step of "-"
 // appends to a list.
-func edited(t testing.TB, document []byte, pointer string, value any) []byte {
+func edited(t fataler, document []byte, pointer string, value any) []byte {
 	t.Helper()
 	var root any
 	if err := json.Unmarshal(document, &root); err != nil {
@@ -57,7 +64,7 @@ func edited(t testing.TB, document []byte, pointer string, value any) []byte {
 }
 
 // set returns node with the value at the steps changed.
-func set(t testing.TB, node any, steps []string, value any) any {
+func set(t fataler, node any, steps []string, value any) any {
 	t.Helper()
 	if len(steps) == 0 {
 		return value

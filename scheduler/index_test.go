@@ -49,8 +49,10 @@ func TestLookUps(t *testing.T) {
 	if got := fmt.Sprint(n[KindCadence], n[KindPhase], n[KindOverlap], n[KindBandPair]); got != "42 12 12 14" {
 		t.Errorf("goals by kind: %s", got)
 	}
-	if c.TelescopeByCode("?") != nil || x.Telescope("?") != nil || c.SourceByName("?") != nil || x.Source("?") != nil || c.BlockByID("?") != nil ||
-		x.Block("?") != nil || c.GoalByID("?") != nil || x.Goal("?") != nil || x.Receiver("?", "L1") != nil || c.Telescopes[0].ReceiverByCode("?") != nil {
+	if c.TelescopeByCode("?") != nil || x.Telescope("?") != nil || c.SourceByName("?") != nil || x.Source("?") != nil ||
+		c.BlockByID("?") != nil ||
+		x.Block("?") != nil || c.GoalByID("?") != nil || x.Goal("?") != nil || x.Receiver("?", "L1") != nil ||
+		c.Telescopes[0].ReceiverByCode("?") != nil {
 		t.Error("something is found under a name that nothing has")
 	}
 }

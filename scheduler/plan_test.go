@@ -19,9 +19,11 @@ func TestReadPlanFillsEveryField(t *testing.T) {
 	want := &Plan{
 		Campaign: "Every field", From: monday, To: monday.Add(Week), Score: 6.5, Possible: 12.25, Bound: 7,
 		Scans: []Scan{
-			{Block: "A-0104", Telescope: "ALT", Source: "SIM J0412+1833", Receiver: "L1", Start: monday.Add(22 * time.Hour), Minutes: 25, MotorAzDeg: &az, Pinned: true, TOAUs: 0.62,
+			{Block: "A-0104", Telescope: "ALT", Source: "SIM J0412+1833", Receiver: "L1",
+				Start: monday.Add(22 * time.Hour), Minutes: 25, MotorAzDeg: &az, Pinned: true, TOAUs: 0.62,
 				Earns: []Earning{{"c1", "c1#1", 4.5}, {"p1", "p1@0", 1.5}}},
-			{Block: "T-0106", Telescope: "TRA", Source: "SIM J1902+0307", Receiver: "U1", Start: monday.Add(50*time.Hour + 10*time.Minute), Minutes: 30},
+			{Block: "T-0106", Telescope: "TRA", Source: "SIM J1902+0307", Receiver: "U1",
+				Start: monday.Add(50*time.Hour + 10*time.Minute), Minutes: 30},
 		},
 		Unmet: []Unmet{
 			{"o1", "o1#1", 3.75, []Reason{{"never-up", "Never up at EQU in a block with L.", 412}}},
@@ -53,7 +55,8 @@ func TestReadPlanAllowsWhatMayBeAbsent(t *testing.T) {
 		{"/scans/0/toa_us", nil, func(p *Plan) bool { return p.Scans[0].TOAUs == 0 }},
 		{"/scans/0/motor_az_deg", nil, func(p *Plan) bool { return p.Scans[0].MotorAzDeg == nil }},
 		{"/scans/0/earns", unset, func(p *Plan) bool { return p.Scans[0].Earns == nil }},
-		{"/unmet/0/reasons/0", "Too full.", func(p *Plan) bool { return p.Unmet[0].Reasons[0] == Reason{Text: "Too full."} }},
+		{"/unmet/0/reasons/0", "Too full.",
+			func(p *Plan) bool { return p.Unmet[0].Reasons[0] == Reason{Text: "Too full."} }},
 		{"/scans", []any{}, func(p *Plan) bool { return p.Scans == nil }},
 	} {
 		p, err := ReadPlan(edited(t, []byte(planText), x.at, x.value))
@@ -67,7 +70,8 @@ func TestReadPlanAllowsWhatMayBeAbsent(t *testing.T) {
 func TestReadPlanNamesWhatIsWrong(t *testing.T) {
 	for _, b := range []broken{
 		{"/campaign", unset, "", "campaign is missing"},
-		{"/from", "2027-W01", "", `from is "2027-W01"; it must be an instant in UTC such as 2027-01-18T06:30:00Z (RFC 3339, with Z)`},
+		{"/from", "2027-W01",
+			"", `from is "2027-W01"; it must be an instant in UTC such as 2027-01-18T06:30:00Z (RFC 3339, with Z)`},
 		{"/to", "2027-01-04T00:00:00Z", "", "to is 2027-01-04T00:00:00Z, not after from, 2027-01-04T00:00:00Z"},
 		{"/score", "6.5", "", `score must be a finite number, not the string "6.5"`},
 		{"/bound", nil, "", "bound must be a finite number, not null"},
@@ -90,7 +94,8 @@ func TestReadPlanNamesWhatIsWrong(t *testing.T) {
 		}
 	}
 	twice := strings.Replace(planText, `"c1#1": 0.25`, `"c1#1": 0.25, "c1#1": 0.5`, 1)
-	if _, err := ReadPlan([]byte(twice)); err == nil || err.Error() != `/certificate/prices/c1#1: the key "c1#1" stands twice in one object` {
+	if _, err := ReadPlan([]byte(twice)); err == nil ||
+		err.Error() != `/certificate/prices/c1#1: the key "c1#1" stands twice in one object` {
 		t.Errorf("a price twice: %v", err)
 	}
 }

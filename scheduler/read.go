@@ -58,7 +58,8 @@ func ReadPlan(data []byte) (*Plan, error) {
 // can be said about the document; problems of its values are in the reader.
 func readFile(data []byte, t *table, obj any) (*fileReader, error) {
 	if len(data) > MaxFileBytes {
-		return nil, Problems{{"", fmt.Sprintf("the file is %.1f MiB; at most %d MiB are allowed", float64(len(data))/(1<<20), MaxFileBytes>>20)}}
+		return nil, Problems{{"", fmt.Sprintf("the file is %.1f MiB; at most %d MiB are allowed", float64(len(data))/(1<<20),
+			MaxFileBytes>>20)}}
 	}
 	data = bytes.TrimPrefix(data, []byte("\xef\xbb\xbf")) // a byte-order mark some editors write
 	if len(bytes.TrimSpace(data)) == 0 {

@@ -34,7 +34,8 @@ func TestReadCampaignReadsTheKeptCampaigns(t *testing.T) {
 		if w := fmt.Sprint(want.grid, want.telescopes, want.sources, want.blocks); got != w || c.Name != want.name {
 			t.Errorf("%s: grid, telescopes, sources, blocks %s, want %s", c.Name, got, w)
 		}
-		got = fmt.Sprint(len(c.CadenceTargets), len(c.PhaseGoals), len(c.OverlapGoals), len(c.BandPairGoals), len(c.History))
+		got = fmt.Sprint(len(c.CadenceTargets), len(c.PhaseGoals), len(c.OverlapGoals), len(c.BandPairGoals),
+			len(c.History))
 		if w := fmt.Sprint(want.cadence, want.phase, want.overlap, want.pair, want.hist); got != w {
 			t.Errorf("%s: goals and history %s, want %s", c.Name, got, w)
 		}
@@ -59,20 +60,30 @@ func TestReadCampaignFillsEveryField(t *testing.T) {
 		what      string
 		got, want any
 	}{
-		{"head", []any{c.Name, c.Start, c.GridMin, c.DUT1S}, []any{"Every field", at("2027-01-04T00:00:00Z"), 5, -0.05}},
-		{"altaz", []any{alt.Mount, alt.AzimuthRangeDeg, alt.RateAzDegS, alt.AccelElDegS2, alt.Horizon[2]}, []any{MountAltAz, [2]float64{-180, 360}, 0.5, 0.04, HorizonPoint{300.25, 7}}},
-		{"equatorial", []any{equ.Mount, equ.HourAngleRangeH, equ.RateHADegS, equ.AccelDecDegS2}, []any{MountEquatorial, [2]float64{-6, 6.5}, 0.4, 0.06}},
-		{"transit", []any{tra.Mount, tra.TrackHalfMin, tra.RateElDegS, tra.SunMinDeg}, []any{MountTransit, 45.0, 0.2, 0.0}},
-		{"receiver defaults", []any{alt.Receivers[1].TatmK, alt.Receivers[1].Digitisation, len(alt.Receivers[0].RFILoss)}, []any{2.0, 1.0, 24}},
-		{"kepler", *c.Sources[0].Binary, Binary{Model: BinaryKepler, PbD: 8.5, A1Ls: 9.25, Ecc: 0.3, OmDeg: 121.5, T0MJD: 58000.25, OmdotDegYr: 0.02, Pbdot: -3e-13, M2Msun: 0.28, Sini: 0.97}},
-		{"ell1", *c.Sources[1].Binary, Binary{Model: BinaryELL1, PbD: 0.38, A1Ls: 1.4, TascMJD: 59000.5, Eps1: 0.00001, Eps2: -0.00002, Pbdot: 1e-13, M2Msun: 0.2, Sini: 0.5}},
+		{"head", []any{c.Name, c.Start, c.GridMin, c.DUT1S}, []any{"Every field", at("2027-01-04T00:00:00Z"), 5,
+			-0.05}},
+		{"altaz", []any{alt.Mount, alt.AzimuthRangeDeg, alt.RateAzDegS, alt.AccelElDegS2, alt.Horizon[2]},
+			[]any{MountAltAz, [2]float64{-180, 360}, 0.5, 0.04, HorizonPoint{300.25, 7}}},
+		{"equatorial", []any{equ.Mount, equ.HourAngleRangeH, equ.RateHADegS, equ.AccelDecDegS2},
+			[]any{MountEquatorial, [2]float64{-6, 6.5}, 0.4, 0.06}},
+		{"transit", []any{tra.Mount, tra.TrackHalfMin, tra.RateElDegS, tra.SunMinDeg},
+			[]any{MountTransit, 45.0, 0.2, 0.0}},
+		{"receiver defaults", []any{alt.Receivers[1].TatmK, alt.Receivers[1].Digitisation,
+			len(alt.Receivers[0].RFILoss)}, []any{2.0, 1.0, 24}},
+		{"kepler", *c.Sources[0].Binary, Binary{Model: BinaryKepler, PbD: 8.5, A1Ls: 9.25, Ecc: 0.3, OmDeg: 121.5,
+			T0MJD: 58000.25, OmdotDegYr: 0.02, Pbdot: -3e-13, M2Msun: 0.28, Sini: 0.97}},
+		{"ell1", *c.Sources[1].Binary, Binary{Model: BinaryELL1, PbD: 0.38, A1Ls: 1.4, TascMJD: 59000.5, Eps1: 0.00001,
+			Eps2: -0.00002, Pbdot: 1e-13, M2Msun: 0.2, Sini: 0.5}},
 		{"single", c.Sources[2].Binary == nil, true},
-		{"source defaults", []any{c.Sources[2].PosEpochMJD, c.Sources[2].PMRAMasYr, c.Sources[2].SunMinDeg}, []any{51544.5, 0.0, 0.0}},
+		{"source defaults", []any{c.Sources[2].PosEpochMJD, c.Sources[2].PMRAMasYr, c.Sources[2].SunMinDeg},
+			[]any{51544.5, 0.0, 0.0}},
 		{"early", []any{c.CadenceTargets[0].EarlyD, c.CadenceTargets[1].EarlyD}, []any{2.0, 3.5}},
-		{"goal defaults", []any{c.CadenceTargets[1].Priority, c.CadenceTargets[1].TOAUs, len(c.CadenceTargets[1].Telescopes)}, []any{1.0, 0.0, 0}},
+		{"goal defaults", []any{c.CadenceTargets[1].Priority, c.CadenceTargets[1].TOAUs,
+			len(c.CadenceTargets[1].Telescopes)}, []any{1.0, 0.0, 0}},
 		{"windows", c.PhaseGoals[0].Windows, []PhaseWindow{{0.9, 1.1, 3}, {0.4, 0.6, 1}}},
 		{"lost", c.Blocks[0].Lost, []Span{{at("2027-01-04T20:00:00Z"), at("2027-01-04T20:45:00.5Z")}}},
-		{"history", c.History[1], HistoryScan{"SIM J1902+0307", "TRA", "U1", at("2026-12-20T04:00:00.125Z"), 30, false}},
+		{"history", c.History[1], HistoryScan{"SIM J1902+0307", "TRA", "U1", at("2026-12-20T04:00:00.125Z"), 30,
+			false}},
 		{"pin", c.Pins[0], Pin{"A-0104", "SIM J0412+1833", "L1", at("2027-01-04T22:00:00Z"), 25}},
 	} {
 		if !reflect.DeepEqual(x.got, x.want) {
@@ -101,7 +112,8 @@ func TestReadCampaignTellsAllAtOnce(t *testing.T) {
 		text = strings.Replace(text, r[0], r[1], 1)
 	}
 	_, err := ReadCampaign([]byte(text))
-	want := []string{"/campaign/dut1_s", "/telescopes/0/height_m", "/telescopes/2/receivers/0/gain_k_per_jy", "/sources/1/period_s",
+	want := []string{"/campaign/dut1_s", "/telescopes/0/height_m", "/telescopes/2/receivers/0/gain_k_per_jy",
+		"/sources/1/period_s",
 		"/blocks/1/colour", "/pins/0", "/cadence_targets/1/id", "/blocks/2/receivers/0"}
 	if got := pointers(problemsOf(t, err)); !reflect.DeepEqual(got, want) {
 		t.Errorf("problems at\n %v, want\n %v\n%v", got, want, err)
@@ -117,14 +129,19 @@ func TestReadCampaignRefusesWhatIsNoJSON(t *testing.T) {
 		{"", "/: the file is empty"},
 		{" \n\t", "/: the file is empty"},
 		{"{", "/: not valid JSON at line 1, column 2: a key in double quotes is expected here, not the end of the file"},
-		{"{\n \"format\": \"campaign/1\",\n \"campaign\": {\"name\": 'x'}}", "/campaign/name: not valid JSON at line 3, column 23: a value is expected here, not '\\''"},
-		{`{"format": "campaign/1", "blocks": [{"id": "a"} {"id": "b"}]}`, "/blocks: not valid JSON at line 1, column 49: a comma or ']' is expected here, not '{'"},
+		{"{\n \"format\": \"campaign/1\",\n \"campaign\": {\"name\": 'x'}}",
+			"/campaign/name: not valid JSON at line 3, column 23: a value is expected here, not '\\''"},
+		{`{"format": "campaign/1", "blocks": [{"id": "a"} {"id": "b"}]}`,
+			"/blocks: not valid JSON at line 1, column 49: a comma or ']' is expected here, not '{'"},
 		{`[1, 2]`, "/: the file must be an object, not a list"},
 		{`"campaign/1"`, `/: the file must be an object, not the string "campaign/1"`},
-		{`{"format": "campaign/1"} {}`, "/: not valid JSON at line 1, column 26: the document is over, but '{' follows"},
+		{`{"format": "campaign/1"} {}`,
+			"/: not valid JSON at line 1, column 26: the document is over, but '{' follows"},
 		{"\x1f\x8b\x08\x00", "/: not valid JSON at line 1, column 1: a value is expected here, not byte 0x1F"},
-		{`{"format": "campaign/1", "x": ` + strings.Repeat("[", 100) + `}`, "/x: not valid JSON at line 1, column 94: nested more than 64 deep"},
-		{"{\"format\": \"campaign/1\", \"pins\": \"\xff\"}", "/pins: not valid JSON at line 1, column 35: text that is not valid UTF-8"},
+		{`{"format": "campaign/1", "x": ` + strings.Repeat("[", 100) + `}`,
+			"/x: not valid JSON at line 1, column 94: nested more than 64 deep"},
+		{"{\"format\": \"campaign/1\", \"pins\": \"\xff\"}",
+			"/pins: not valid JSON at line 1, column 35: text that is not valid UTF-8"},
 	} {
 		_, err := ReadCampaign([]byte(x.text))
 		got := problemsOf(t, err)
@@ -141,7 +158,8 @@ func TestReadCampaignRefusesWhatIsNoJSON(t *testing.T) {
 // A file of another format says so, and nothing else.
 func TestReadCampaignTellsAnotherFormat(t *testing.T) {
 	for _, x := range []struct{ text, want string }{
-		{`{"format": "plan/1", "scans": []}`, `/format: format is "plan/1"; it must be "campaign/1": this file is a plan`},
+		{`{"format": "plan/1", "scans": []}`,
+			`/format: format is "plan/1"; it must be "campaign/1": this file is a plan`},
 		{`{"scans": [], "format": "campaign/2"}`, `/format: format is "campaign/2"; it must be "campaign/1"`},
 		{`{"format": 1}`, `/format: format must be "campaign/1"`},
 	} {
@@ -151,7 +169,8 @@ func TestReadCampaignTellsAnotherFormat(t *testing.T) {
 		}
 	}
 	_, err := ReadPlan([]byte(`{"format": "campaign/1"}`))
-	if want := `/format: format is "campaign/1"; it must be "plan/1": this file is a campaign`; err == nil || err.Error() != want {
+	if want := `/format: format is "campaign/1"; it must be "plan/1": this file is a campaign`; err == nil ||
+		err.Error() != want {
 		t.Errorf("a campaign read as a plan: %v, want %s", err, want)
 	}
 	_, err = ReadCampaign([]byte(`{"campaign": {}}`))
@@ -214,7 +233,8 @@ func TestReadCampaignFindsOverlappingBlocks(t *testing.T) {
 			continue
 		}
 		p := problemsOf(t, err)
-		if len(p) != 1 || p[0].Pointer != "/blocks/3/start" || !strings.Contains(p[0].Message, "overlaps block A-0104 of the same telescope") {
+		if len(p) != 1 || p[0].Pointer != "/blocks/3/start" ||
+			!strings.Contains(p[0].Message, "overlaps block A-0104 of the same telescope") {
 			t.Errorf("%s to %s: %v", x.start, x.end, p)
 		}
 	}
@@ -224,7 +244,8 @@ func TestReadCampaignFindsOverlappingBlocks(t *testing.T) {
 	c.Blocks[1].Start, c.Blocks[1].End = c.Blocks[0].End, c.Blocks[0].End.Add(time.Hour)
 	c.Blocks[2].Telescope, c.Blocks[2].Receivers = "ALT", []string{"L1"}
 	c.Blocks[2].Start, c.Blocks[2].End = c.Blocks[0].Start.Add(-time.Hour), c.Blocks[1].End
-	if got := pointers(problemsOf(t, c.Validate())); !reflect.DeepEqual(got, []string{"/blocks/2/start", "/blocks/2/start"}) {
+	if got := pointers(problemsOf(t, c.Validate())); !reflect.DeepEqual(got,
+		[]string{"/blocks/2/start", "/blocks/2/start"}) {
 		t.Errorf("one block over two: problems at %v", got)
 	}
 }
@@ -249,7 +270,8 @@ func TestReadCampaignKeepsLimits(t *testing.T) {
 	}{
 		{"sources", source, 9997, "/sources: sources holds 10000 items; at most 5000 are allowed"},
 		{"blocks", `{"id": "b#", "telescope": "EQU", "start": "2027-01-01T00:00:00Z", "end": "2027-01-01T00:00:00.001Z", "receivers": ["L1"]}`, 1998, "/blocks: blocks holds 2001 items; at most 2000 are allowed"},
-		{"cadence_targets", `{"id": "x#", "source": "SIM J1902+0307", "bands": ["L"], "every_d": 7}`, 20000, "/cadence_targets: cadence_targets holds 20002 items; at most 20000 are allowed"},
+		{"cadence_targets", `{"id": "x#", "source": "SIM J1902+0307", "bands": ["L"], "every_d": 7}`, 20000,
+			"/cadence_targets: cadence_targets holds 20002 items; at most 20000 are allowed"},
 	} {
 		_, err := ReadCampaign(repeated(x.list, x.item, x.n))
 		p := problemsOf(t, err)
@@ -272,7 +294,8 @@ func TestReadCampaignKeepsLimits(t *testing.T) {
 // Of very many problems the first are listed and the rest counted.
 func TestReadCampaignCountsTheRest(t *testing.T) {
 	text := `{"format": "campaign/1", "campaign": {"name": "x", "start": "2027-01-01T00:00:00Z", "end": "2027-02-01T00:00:00Z"}, "history": [` +
-		strings.Repeat(`{"source": "A", "telescope": "B", "receiver": "C", "start": "x", "minutes": -1, "counted": 0},`, 1000) + `7]}`
+		strings.Repeat(`{"source": "A", "telescope": "B", "receiver": "C", "start": "x", "minutes": -1, "counted": 0},`,
+			1000) + `7]}`
 	_, err := ReadCampaign([]byte(text))
 	p := problemsOf(t, err)
 	if len(p) != MaxProblems+1 {
@@ -291,15 +314,23 @@ func TestValidateRefusesNaNAndZeroTimes(t *testing.T) {
 		want   string
 	}{
 		{func(c *Campaign) { c.DUT1S = math.NaN() }, "/campaign/dut1_s: dut1_s must be a finite number, not NaN"},
-		{func(c *Campaign) { c.Sources[0].RADeg = math.Inf(1) }, "/sources/0/ra_deg: SIM J0412+1833: ra_deg must be a finite number, not +Inf"},
-		{func(c *Campaign) { c.Telescopes[0].Horizon[1].AzimuthDeg = math.NaN() }, "/telescopes/0/horizon/1: telescope ALT: horizon[1]: azimuth is NaN; it must be from 0 to less than 360 degrees"},
-		{func(c *Campaign) { c.Telescopes[0].AzimuthRangeDeg[1] = math.NaN() }, "/telescopes/0/azimuth_range_deg/1: telescope ALT: azimuth_range_deg[1] must be a finite number, not NaN"},
-		{func(c *Campaign) { c.Telescopes[0].Receivers[0].RFILoss[2] = math.NaN() }, "/telescopes/0/receivers/0/rfi_loss/2: telescope ALT, receiver L1: rfi_loss[2] must be a finite number, not NaN"},
-		{func(c *Campaign) { c.Blocks[0].Lost[0].End = time.Time{} }, "/blocks/0/lost/0/1: block A-0104: lost[0][1] is not set; it must be an instant in UTC such as 2027-01-18T06:30:00Z (RFC 3339, with Z)"},
+		{func(c *Campaign) { c.Sources[0].RADeg = math.Inf(1) },
+			"/sources/0/ra_deg: SIM J0412+1833: ra_deg must be a finite number, not +Inf"},
+		{func(c *Campaign) { c.Telescopes[0].Horizon[1].AzimuthDeg = math.NaN() },
+			"/telescopes/0/horizon/1: telescope ALT: horizon[1]: azimuth is NaN; it must be from 0 to less than 360 degrees"},
+		{func(c *Campaign) { c.Telescopes[0].AzimuthRangeDeg[1] = math.NaN() },
+			"/telescopes/0/azimuth_range_deg/1: telescope ALT: azimuth_range_deg[1] must be a finite number, not NaN"},
+		{func(c *Campaign) { c.Telescopes[0].Receivers[0].RFILoss[2] = math.NaN() },
+			"/telescopes/0/receivers/0/rfi_loss/2: telescope ALT, receiver L1: rfi_loss[2] must be a finite number, not NaN"},
+		{func(c *Campaign) { c.Blocks[0].Lost[0].End = time.Time{} },
+			"/blocks/0/lost/0/1: block A-0104: lost[0][1] is not set; it must be an instant in UTC such as 2027-01-18T06:30:00Z (RFC 3339, with Z)"},
 		{func(c *Campaign) { c.Sources[0].Name = "a\xff" }, "/sources/0/name: a\uFFFD: name is not valid UTF-8"},
-		{func(c *Campaign) { c.Sources[2].Name = strings.Repeat("é", 501) }, "name is 501 characters long; at most 500 are allowed"},
-		{func(c *Campaign) { c.Telescopes[2].AccelHADegS2 = 1 }, "/telescopes/2/accel_ha_deg_s2: telescope TRA: accel_ha_deg_s2 belongs to mount equatorial; this one is transit"},
-		{func(c *Campaign) { c.Pins = make([]Pin, MaxPins+1) }, "/pins: pins holds 20001 items; at most 20000 are allowed"},
+		{func(c *Campaign) { c.Sources[2].Name = strings.Repeat("é", 501) },
+			"name is 501 characters long; at most 500 are allowed"},
+		{func(c *Campaign) { c.Telescopes[2].AccelHADegS2 = 1 },
+			"/telescopes/2/accel_ha_deg_s2: telescope TRA: accel_ha_deg_s2 belongs to mount equatorial; this one is transit"},
+		{func(c *Campaign) { c.Pins = make([]Pin, MaxPins+1) },
+			"/pins: pins holds 20001 items; at most 20000 are allowed"},
 	} {
 		c := everyField(t)
 		x.change(c)

@@ -127,11 +127,13 @@ func TestWriteRefusesWhatIsNotValid(t *testing.T) {
 		t.Errorf("written: %s", data)
 	}
 	p := &Plan{Campaign: "x", From: FirstInstant, To: FirstInstant.Add(Week), Score: math.NaN()}
-	if data, err := WritePlan(p); err == nil || data != nil || !strings.Contains(err.Error(), "/score: score must be a finite number, not NaN") {
+	if data, err := WritePlan(p); err == nil || data != nil ||
+		!strings.Contains(err.Error(), "/score: score must be a finite number, not NaN") {
 		t.Errorf("written: %s, %v", data, err)
 	}
 	p.Score, p.To = 0, p.From
-	if _, err := WritePlan(p); err == nil || err.Error() != "/to: to is 1972-01-01T00:00:00Z, not after from, 1972-01-01T00:00:00Z" {
+	if _, err := WritePlan(p); err == nil ||
+		err.Error() != "/to: to is 1972-01-01T00:00:00Z, not after from, 1972-01-01T00:00:00Z" {
 		t.Errorf("an empty horizon: %v", err)
 	}
 }
@@ -169,7 +171,8 @@ func TestCloneIsDeep(t *testing.T) {
 		t.Error("a changed clone is still equal")
 	}
 	az := 5.0
-	p := &Plan{Scans: []Scan{{MotorAzDeg: &az, Earns: []Earning{{Value: 1}}}}, Certificate: Certificate{Prices: map[string]float64{"a#1": 1}}}
+	p := &Plan{Scans: []Scan{{MotorAzDeg: &az, Earns: []Earning{{Value: 1}}}},
+		Certificate: Certificate{Prices: map[string]float64{"a#1": 1}}}
 	q := p.Clone()
 	*q.Scans[0].MotorAzDeg, q.Scans[0].Earns[0].Value, q.Certificate.Prices["a#1"] = 6, 2, 3
 	if az != 5 || p.Scans[0].Earns[0].Value != 1 || p.Certificate.Prices["a#1"] != 1 {
@@ -235,8 +238,10 @@ func TestWriterNumbers(t *testing.T) {
 		v    float64
 		want string
 	}{
-		{0, "0"}, {math.Copysign(0, -1), "0"}, {1, "1"}, {-0.5, "-0.5"}, {0.1, "0.1"}, {1e-6, "0.000001"}, {1.5e-7, "1.5e-7"}, {-3e-13, "-3e-13"},
-		{1e-300, "1e-300"}, {123456789012345, "123456789012345"}, {1e15, "1e+15"}, {1e300, "1e+300"}, {0.30000000000000004, "0.30000000000000004"},
+		{0, "0"}, {math.Copysign(0, -1), "0"}, {1, "1"}, {-0.5, "-0.5"}, {0.1, "0.1"}, {1e-6, "0.000001"},
+		{1.5e-7, "1.5e-7"}, {-3e-13, "-3e-13"},
+		{1e-300, "1e-300"}, {123456789012345, "123456789012345"}, {1e15, "1e+15"}, {1e300, "1e+300"},
+		{0.30000000000000004, "0.30000000000000004"},
 	} {
 		var w writer
 		w.number(x.v)

@@ -6,12 +6,14 @@ import "encoding/json"
 // that can be said of one value; references, names used twice and blocks that
 // overlap are for ReadCampaign.
 func CampaignSchema() []byte {
-	return schemaOf(&campaignFile, "Campaign file", "What an observing campaign has and wants. Angles are degrees, instants UTC, longitudes east-positive.")
+	return schemaOf(&campaignFile, "Campaign file",
+		"What an observing campaign has and wants. Angles are degrees, instants UTC, longitudes east-positive.")
 }
 
 // PlanSchema is a JSON Schema (2020-12) of the plan file.
 func PlanSchema() []byte {
-	return schemaOf(&planFile, "Plan file", "Scans for the blocks of one horizon, what they earn, what stays unmet, and a certificate of the bound.")
+	return schemaOf(&planFile, "Plan file",
+		"Scans for the blocks of one horizon, what they earn, what stays unmet, and a certificate of the bound.")
 }
 
 // schemaOf writes a whole schema document. Its bytes are always the same:
@@ -66,7 +68,8 @@ func (t *table) conditions() []any {
 			}
 		}
 		all = append(all, map[string]any{
-			"if":   map[string]any{"properties": map[string]any{t.selector: map[string]any{"const": choice}}, "required": []string{t.selector}},
+			"if": map[string]any{"properties": map[string]any{t.selector: map[string]any{"const": choice}},
+				"required": []string{t.selector}},
 			"then": map[string]any{"required": required, "properties": foreign},
 		})
 	}

@@ -10,53 +10,58 @@ import (
 // planFile is the whole plan file. What a plan may lack without being
 // unreadable is optional, so that a re-check can report it.
 var planFile = table{what: "a plan file", lines: true, fields: []field{
-	{key: "format", need: must, kind: literal(PlanFormat), doc: "format of this file"},
-	{key: "campaign", need: must, kind: text{}, at: at(func(p *Plan) *string { return &p.Campaign }), doc: "name of the campaign that the plan is for"},
-	{key: "from", need: must, kind: instant{}, at: at(func(p *Plan) *time.Time { return &p.From }), doc: "first instant of the horizon"},
-	{key: "to", need: must, kind: instant{}, at: at(func(p *Plan) *time.Time { return &p.To }), doc: "first instant after the horizon"},
-	{key: "score", need: must, kind: anyNumber, at: at(func(p *Plan) *float64 { return &p.Score }), doc: "all that is earned"},
-	{key: "possible", need: must, kind: anyNumber, at: at(func(p *Plan) *float64 { return &p.Possible }), doc: "sum of the weights of all units"},
-	{key: "bound", need: must, kind: anyNumber, at: at(func(p *Plan) *float64 { return &p.Bound }), doc: "no plan can score more"},
-	{key: "scans", need: must, kind: list[Scan]{&scanTable, 0, MaxPlanScans}, at: at(func(p *Plan) *[]Scan { return &p.Scans }), doc: "the scans"},
-	{key: "unmet", kind: list[Unmet]{&unmetTable, 0, MaxPlanUnits}, at: at(func(p *Plan) *[]Unmet { return &p.Unmet }), doc: "units that earned fewer times than they could"},
-	{key: "certificate", kind: nested{&certificateTable}, at: at(func(p *Plan) *Certificate { return &p.Certificate }), doc: "what anyone needs to recompute the bound"},
+	{key: "format", need: true, kind: literal(PlanFormat), doc: "format of this file"},
+	req("campaign", text{}, func(p *Plan) *string { return &p.Campaign }, "name of the campaign that the plan is for"),
+	req("from", instant{}, func(p *Plan) *time.Time { return &p.From }, "first instant of the horizon"),
+	req("to", instant{}, func(p *Plan) *time.Time { return &p.To }, "first instant after the horizon"),
+	req("score", anyNumber, func(p *Plan) *float64 { return &p.Score }, "all that is earned"),
+	req("possible", anyNumber, func(p *Plan) *float64 { return &p.Possible }, "sum of the weights of all units"),
+	req("bound", anyNumber, func(p *Plan) *float64 { return &p.Bound }, "no plan can score more"),
+	req("scans", list[Scan]{&scanTable, 0, MaxPlanScans}, func(p *Plan) *[]Scan { return &p.Scans }, "the scans"),
+	opt("unmet", list[Unmet]{&unmetTable, 0, MaxPlanUnits}, func(p *Plan) *[]Unmet { return &p.Unmet },
+		"units that earned fewer times than they could"),
+	opt("certificate", nested{&certificateTable}, func(p *Plan) *Certificate { return &p.Certificate },
+		"what anyone needs to recompute the bound"),
 }}
 
 var scanTable = table{what: "a scan", fields: []field{
-	{key: "block", need: must, kind: text{}, at: at(func(s *Scan) *string { return &s.Block }), doc: "id of the block"},
-	{key: "telescope", need: must, kind: text{}, at: at(func(s *Scan) *string { return &s.Telescope }), doc: "code of the telescope"},
-	{key: "source", need: must, kind: text{}, at: at(func(s *Scan) *string { return &s.Source }), doc: "name of the source"},
-	{key: "receiver", need: must, kind: text{}, at: at(func(s *Scan) *string { return &s.Receiver }), doc: "code of the receiver"},
-	{key: "start", need: must, kind: instant{}, at: at(func(s *Scan) *time.Time { return &s.Start }), doc: "start of the scan, on the grid"},
-	{key: "minutes", need: must, kind: integer{lo: 1, hi: int(MaxBlock.Minutes()), unit: "minutes"}, at: at(func(s *Scan) *int { return &s.Minutes }), doc: "length, minutes"},
-	{key: "motor_az_deg", kind: optionalNumber{}, at: at(func(s *Scan) **float64 { return &s.MotorAzDeg }), doc: "altaz only: azimuth of the motor at the start, turns included, degrees"},
-	{key: "pinned", kind: truth{}, at: at(func(s *Scan) *bool { return &s.Pinned }), doc: "stands in the plan because it is pinned"},
-	{key: "toa_us", kind: figure{}, at: at(func(s *Scan) *float64 { return &s.TOAUs }), doc: "predicted TOA uncertainty, us; absent: not detectable"},
-	{key: "earns", kind: list[Earning]{&earningTable, 0, MaxScanEarns}, at: at(func(s *Scan) *[]Earning { return &s.Earns }), doc: "what the scan earns"},
+	req("block", text{}, func(s *Scan) *string { return &s.Block }, "id of the block"),
+	req("telescope", text{}, func(s *Scan) *string { return &s.Telescope }, "code of the telescope"),
+	req("source", text{}, func(s *Scan) *string { return &s.Source }, "name of the source"),
+	req("receiver", text{}, func(s *Scan) *string { return &s.Receiver }, "code of the receiver"),
+	req("start", instant{}, func(s *Scan) *time.Time { return &s.Start }, "start of the scan, on the grid"),
+	req("minutes", integer{lo: 1, hi: int(MaxBlock.Minutes()), unit: "minutes"}, func(s *Scan) *int { return &s.Minutes },
+		"length, minutes"),
+	opt("motor_az_deg", optionalNumber{}, func(s *Scan) **float64 { return &s.MotorAzDeg },
+		"altaz only: azimuth of the motor at the start, turns included, degrees"),
+	opt("pinned", truth{}, func(s *Scan) *bool { return &s.Pinned }, "stands in the plan because it is pinned"),
+	opt("toa_us", figure{}, func(s *Scan) *float64 { return &s.TOAUs }, "predicted TOA uncertainty, us; absent: not detectable"),
+	opt("earns", list[Earning]{&earningTable, 0, MaxScanEarns}, func(s *Scan) *[]Earning { return &s.Earns }, "what the scan earns"),
 }}
 
 var earningTable = table{what: "an earning", fields: []field{
-	{key: "goal", need: must, kind: text{}, at: at(func(e *Earning) *string { return &e.Goal }), doc: "id of the goal"},
-	{key: "unit", need: must, kind: text{}, at: at(func(e *Earning) *string { return &e.Unit }), doc: "name of the unit: goal#k or goal@window"},
-	{key: "value", need: must, kind: anyNumber, at: at(func(e *Earning) *float64 { return &e.Value }), doc: "what the scan gets from the unit"},
+	req("goal", text{}, func(e *Earning) *string { return &e.Goal }, "id of the goal"),
+	req("unit", text{}, func(e *Earning) *string { return &e.Unit }, "name of the unit: goal#k or goal@window"),
+	req("value", anyNumber, func(e *Earning) *float64 { return &e.Value }, "what the scan gets from the unit"),
 }}
 
 var unmetTable = table{what: "an unmet unit", fields: []field{
-	{key: "goal", need: must, kind: text{}, at: at(func(u *Unmet) *string { return &u.Goal }), doc: "id of the goal"},
-	{key: "unit", need: must, kind: text{}, at: at(func(u *Unmet) *string { return &u.Unit }), doc: "name of the unit"},
-	{key: "weight", need: must, kind: anyNumber, at: at(func(u *Unmet) *float64 { return &u.Weight }), doc: "what the unit is worth"},
-	{key: "reasons", kind: reasons{}, at: at(func(u *Unmet) *[]Reason { return &u.Reasons }), doc: "why it is unmet"},
+	req("goal", text{}, func(u *Unmet) *string { return &u.Goal }, "id of the goal"),
+	req("unit", text{}, func(u *Unmet) *string { return &u.Unit }, "name of the unit"),
+	req("weight", anyNumber, func(u *Unmet) *float64 { return &u.Weight }, "what the unit is worth"),
+	opt("reasons", reasons{}, func(u *Unmet) *[]Reason { return &u.Reasons }, "why it is unmet"),
 }}
 
 var reasonTable = table{what: "a reason", fields: []field{
-	{key: "code", kind: text{}, at: at(func(r *Reason) *string { return (*string)(&r.Code) }), doc: "name of the cause"},
-	{key: "text", need: must, kind: text{empty: true, most: MaxReasonChars, lines: true}, at: at(func(r *Reason) *string { return &r.Text }), doc: "the cause in plain words"},
-	{key: "count", kind: integer{lo: 0, hi: 1 << 31}, at: at(func(r *Reason) *int { return &r.Count }), doc: "candidate scans or blocks it applies to"},
+	opt("code", text{}, func(r *Reason) *string { return (*string)(&r.Code) }, "name of the cause"),
+	req("text", text{empty: true, most: MaxReasonChars, lines: true}, func(r *Reason) *string { return &r.Text },
+		"the cause in plain words"),
+	opt("count", integer{lo: 0, hi: 1 << 31}, func(r *Reason) *int { return &r.Count }, "candidate scans or blocks it applies to"),
 }}
 
 var certificateTable = table{what: "a certificate", fields: []field{
-	{key: "prices", need: must, kind: prices{}, at: at(func(c *Certificate) *map[string]float64 { return &c.Prices }), doc: "price of a unit by its name; 0 where left out"},
-	{key: "bound", need: must, kind: anyNumber, at: at(func(c *Certificate) *float64 { return &c.Bound }), doc: "bound that follows from the prices"},
+	req("prices", prices{}, func(c *Certificate) *map[string]float64 { return &c.Prices }, "price of a unit by its name; 0 where left out"),
+	req("bound", anyNumber, func(c *Certificate) *float64 { return &c.Bound }, "bound that follows from the prices"),
 }}
 
 // figure is a positive number; absent, null and 0 all say that there is none.

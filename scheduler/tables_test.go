@@ -9,10 +9,14 @@ import (
 // allTables are the tables of both formats with the struct each describes.
 func allTables() map[*table]any {
 	return map[*table]any{
-		&campaignFile: new(Campaign), &telescopeTable: new(Telescope), &receiverTable: new(Receiver), &sourceTable: new(Source),
-		&binaryTable: new(Binary), &cadenceTable: new(CadenceTarget), &phaseTable: new(PhaseGoal), &windowTable: new(PhaseWindow),
-		&overlapTable: new(OverlapGoal), &pairTable: new(BandPairGoal), &blockTable: new(Block), &historyTable: new(HistoryScan), &pinTable: new(Pin),
-		&planFile: new(Plan), &scanTable: new(Scan), &earningTable: new(Earning), &unmetTable: new(Unmet), &reasonTable: new(Reason),
+		&campaignFile: new(Campaign), &telescopeTable: new(Telescope), &receiverTable: new(Receiver),
+		&sourceTable: new(Source),
+		&binaryTable: new(Binary), &cadenceTable: new(CadenceTarget), &phaseTable: new(PhaseGoal),
+		&windowTable:  new(PhaseWindow),
+		&overlapTable: new(OverlapGoal), &pairTable: new(BandPairGoal), &blockTable: new(Block),
+		&historyTable: new(HistoryScan), &pinTable: new(Pin),
+		&planFile: new(Plan), &scanTable: new(Scan), &earningTable: new(Earning), &unmetTable: new(Unmet),
+		&reasonTable:      new(Reason),
 		&certificateTable: new(Certificate),
 	}
 }
@@ -72,8 +76,10 @@ func eachLeaf(v reflect.Value, f func(name string, v reflect.Value)) {
 // Keys are named as the planning model names them, are described, and a
 // unit in the name is the unit of the description.
 func TestTablesAreDescribed(t *testing.T) {
-	units := map[string]string{"_deg": "degrees", "_s": "s", "_mhz": "MHz", "_k": "K", "_d": "d", "_min": "minutes", "_us": "us", "_h": "hours",
-		"_mjy": "mJy", "_mas_yr": "mas/yr", "_deg_s": "degrees/s", "_mjd": "MJD", "_ls": "light-seconds", "_msun": "solar masses"}
+	units := map[string]string{"_deg": "degrees", "_s": "s", "_mhz": "MHz", "_k": "K", "_d": "d", "_min": "minutes",
+		"_us": "us", "_h": "hours",
+		"_mjy": "mJy", "_mas_yr": "mas/yr", "_deg_s": "degrees/s", "_mjd": "MJD", "_ls": "light-seconds",
+		"_msun": "solar masses"}
 	for table := range allTables() {
 		if len(table.fields) > 64 {
 			t.Errorf("%s has %d keys; the reader counts those it has seen in 64 bits", table.what, len(table.fields))
@@ -86,7 +92,8 @@ func TestTablesAreDescribed(t *testing.T) {
 				t.Errorf("%s: key %s is not in lower case", table.what, f.key)
 			}
 			for suffix, unit := range units {
-				if n, ok := f.kind.(number); ok && strings.HasSuffix(f.key, suffix) && !strings.Contains(f.doc+" "+n.unit, unit) {
+				if n, ok := f.kind.(number); ok && strings.HasSuffix(f.key, suffix) &&
+					!strings.Contains(f.doc+" "+n.unit, unit) {
 					if longer(f.key, suffix, units) {
 						continue
 					}

@@ -102,7 +102,8 @@ func (t *together) telescopes() {
 			at := place("telescopes", i, "receivers", strconv.Itoa(j))
 			if r.BandwidthMHz > 2*r.FreqMHz {
 				t.fault([]string{at + "/bandwidth_mhz", at + "/freq_mhz"},
-					"bandwidth_mhz is %s; a band about %s MHz can be at most %s MHz wide", short(r.BandwidthMHz), short(r.FreqMHz), short(2*r.FreqMHz))
+					"bandwidth_mhz is %s; a band about %s MHz can be at most %s MHz wide", short(r.BandwidthMHz), short(r.FreqMHz),
+					short(2*r.FreqMHz))
 			}
 		}
 		if t.receivers[tel.Code] == nil {
@@ -179,18 +180,21 @@ func (t *together) refers(at, thing, name string, known map[string]int, names fu
 
 func (t *together) cadence(at string, g *CadenceTarget) {
 	if g.EarlyD > g.EveryD/2 {
-		t.fault([]string{at + "/early_d", at + "/every_d"}, "early_d is %s; it must be at most half of every_d, %s d", short(g.EarlyD), short(g.EveryD/2))
+		t.fault([]string{at + "/early_d", at + "/every_d"}, "early_d is %s; it must be at most half of every_d, %s d", short(g.EarlyD),
+			short(g.EveryD/2))
 	}
 }
 
 func (t *together) phase(at string, g *PhaseGoal) {
 	if i, ok := t.sourceAt[g.Source]; ok && t.c.Sources[i].Binary == nil {
-		t.fault([]string{at + "/source", place("sources", i, "binary")}, "source %s has no binary, so it has no orbital phase", quote(g.Source))
+		t.fault([]string{at + "/source", place("sources", i, "binary")}, "source %s has no binary, so it has no orbital phase",
+			quote(g.Source))
 	}
 	for j, w := range g.Windows {
 		if !(w.From < w.To && w.To <= w.From+1) {
 			below := at + "/windows/" + strconv.Itoa(j)
-			t.fault([]string{below + "/to", below + "/from"}, "to is %s; it must be greater than from, %s, and at most %s", short(w.To), short(w.From), short(w.From+1))
+			t.fault([]string{below + "/to", below + "/from"}, "to is %s; it must be greater than from, %s, and at most %s", short(w.To),
+				short(w.From), short(w.From+1))
 		}
 	}
 }
@@ -201,7 +205,8 @@ func (t *together) overlap(at string, g *OverlapGoal) {
 		n, whose = len(t.c.Telescopes), "telescopes in the campaign"
 	}
 	if g.Count > n {
-		t.fault([]string{at + "/count", at + "/telescopes", "/telescopes"}, "count is %d; it must be at most the number of %s, %d", g.Count, whose, n)
+		t.fault([]string{at + "/count", at + "/telescopes", "/telescopes"}, "count is %d; it must be at most the number of %s, %d", g.Count,
+			whose, n)
 	}
 }
 
@@ -210,7 +215,8 @@ func (t *together) pair(at string, g *BandPairGoal) {
 		t.fault([]string{at + "/bands"}, "bands holds %d bands; a band pair has exactly two", len(g.Bands))
 	}
 	if g.WithinH > g.EveryD*12 {
-		t.fault([]string{at + "/within_h", at + "/every_d"}, "within_h is %s; it must be at most half of every_d, %s h", short(g.WithinH), short(g.EveryD*12))
+		t.fault([]string{at + "/within_h", at + "/every_d"}, "within_h is %s; it must be at most half of every_d, %s h", short(g.WithinH),
+			short(g.EveryD*12))
 	}
 }
 
@@ -290,7 +296,8 @@ func (t *together) receiver(at, telescope, code string) {
 	for _, r := range t.c.Telescopes[i].Receivers {
 		names = append(names, r.Code)
 	}
-	t.fault([]string{at, place("telescopes", i, "receivers")}, "telescope %s has no receiver %s; it has %s", telescope, quote(code), strings.Join(names, ", "))
+	t.fault([]string{at, place("telescopes", i, "receivers")}, "telescope %s has no receiver %s; it has %s", telescope, quote(code),
+		strings.Join(names, ", "))
 }
 
 // history checks references.
@@ -339,10 +346,12 @@ func (t *together) pinGrid(at string, p *Pin) {
 	}
 	grid := time.Duration(t.c.GridMin) * time.Minute
 	if p.Start.UnixMilli()%grid.Milliseconds() != 0 {
-		t.fault([]string{at + "/start", "/campaign/grid_min"}, "start is %s; it must lie on the grid of %d minutes since 00:00 UTC", instantText(p.Start), t.c.GridMin)
+		t.fault([]string{at + "/start", "/campaign/grid_min"}, "start is %s; it must lie on the grid of %d minutes since 00:00 UTC",
+			instantText(p.Start), t.c.GridMin)
 	}
 	if p.Minutes%t.c.GridMin != 0 {
-		t.fault([]string{at + "/minutes", "/campaign/grid_min"}, "minutes is %d; it must be a multiple of the grid, %d minutes", p.Minutes, t.c.GridMin)
+		t.fault([]string{at + "/minutes", "/campaign/grid_min"}, "minutes is %d; it must be a multiple of the grid, %d minutes", p.Minutes,
+			t.c.GridMin)
 	}
 }
 

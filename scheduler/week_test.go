@@ -31,10 +31,12 @@ func TestWeekHorizon(t *testing.T) {
 		{"2099-W53", day(2099, 12, 28)},
 	} {
 		h, err := WeekHorizon(x.name)
-		if err != nil || !h.From.Equal(x.from) || !h.To.Equal(x.from.AddDate(0, 0, 7)) || h.From.Location() != time.UTC {
+		if err != nil || !h.From.Equal(x.from) || !h.To.Equal(x.from.AddDate(0, 0, 7)) ||
+			h.From.Location() != time.UTC {
 			t.Errorf("%s is %v, %v; want from %v", x.name, h, err, x.from)
 		}
-		for _, at := range []time.Time{h.From, h.To.Add(-1), h.From.Add(50 * time.Hour).In(time.FixedZone("", -9*3600))} {
+		for _, at := range []time.Time{h.From, h.To.Add(-1), h.From.Add(50 * time.Hour).In(time.FixedZone("",
+			-9*3600))} {
 			if got := WeekName(at); got != x.name {
 				t.Errorf("%v lies in %s, want %s", at, got, x.name)
 			}

@@ -43,7 +43,8 @@ func TestGenerateIsTheKeptFile(t *testing.T) {
 		t.Fatal(err)
 	}
 	if !bytes.Equal(got, want) {
-		t.Errorf("the generator makes another campaign than %s; if that is meant, run: go test ./server/demo -update", keptFile)
+		t.Errorf("the generator makes another campaign than %s; if that is meant, run: go test ./server/demo -update",
+			keptFile)
 	}
 	back, err := scheduler.ReadCampaign(want)
 	if err != nil || !back.Equal(kept) {
@@ -82,7 +83,8 @@ func TestGenerateIsAlwaysValid(t *testing.T) {
 // Dates outside the tabulated years are moved to the nearest inside.
 func TestGenerateOutsideTheYears(t *testing.T) {
 	for _, x := range []struct{ day, as time.Time }{
-		{time.Time{}, firstDay}, {time.Date(1901, 1, 1, 0, 0, 0, 0, time.UTC), firstDay}, {time.Date(3000, 1, 1, 0, 0, 0, 0, time.UTC), lastDay},
+		{time.Time{}, firstDay}, {time.Date(1901, 1, 1, 0, 0, 0, 0, time.UTC), firstDay},
+		{time.Date(3000, 1, 1, 0, 0, 0, 0, time.UTC), lastDay},
 	} {
 		c := Generate(1, x.day)
 		if err := c.Validate(); err != nil {
@@ -105,7 +107,8 @@ func checkShape(t *testing.T, c *scheduler.Campaign, monday time.Time) {
 	goals := map[scheduler.GoalKind]int{}
 	all := 0
 	c.EachGoal(func(kind scheduler.GoalKind, _ int, _ *scheduler.Goal) { goals[kind]++; all++ })
-	if all < 100 || all > 120 || goals[scheduler.KindCadence] < 60 || goals[scheduler.KindPhase] != 16 || goals[scheduler.KindOverlap] < 8 || goals[scheduler.KindBandPair] < 10 {
+	if all < 100 || all > 120 || goals[scheduler.KindCadence] < 60 || goals[scheduler.KindPhase] != 16 ||
+		goals[scheduler.KindOverlap] < 8 || goals[scheduler.KindBandPair] < 10 {
 		t.Errorf("%d goals: %v", all, goals)
 	}
 	binaries := 0
@@ -156,11 +159,13 @@ func TestTelescopes(t *testing.T) {
 			}
 		}
 	}
-	if mounts[scheduler.MountAltAz] != 3 || mounts[scheduler.MountEquatorial] != 1 || mounts[scheduler.MountTransit] != 1 {
+	if mounts[scheduler.MountAltAz] != 3 || mounts[scheduler.MountEquatorial] != 1 ||
+		mounts[scheduler.MountTransit] != 1 {
 		t.Errorf("mounts %v", mounts)
 	}
 	if len(continents) != 3 || far != 1 || wide != 1 || wrap != 3 {
-		t.Errorf("continents %v, %d beyond 60 degrees, %d wide-band receivers, %d with a cable wrap", continents, far, wide, wrap)
+		t.Errorf("continents %v, %d beyond 60 degrees, %d wide-band receivers, %d with a cable wrap", continents, far,
+			wide, wrap)
 	}
 }
 
@@ -204,7 +209,8 @@ func TestRandom(t *testing.T) {
 
 func TestRounding(t *testing.T) {
 	for _, x := range []struct{ got, want float64 }{
-		{round(1.23456, 2), 1.23}, {round(-1.235001, 2), -1.24}, {significant(0.0012345, 2), 0.0012}, {significant(98765, 3), 98800}, {significant(0, 3), 0}, {significant(-2.5e-13, 1), -3e-13},
+		{round(1.23456, 2), 1.23}, {round(-1.235001, 2), -1.24}, {significant(0.0012345, 2), 0.0012},
+		{significant(98765, 3), 98800}, {significant(0, 3), 0}, {significant(-2.5e-13, 1), -3e-13},
 	} {
 		if math.Abs(x.got-x.want) > 1e-9*math.Abs(x.want) {
 			t.Errorf("%v, want %v", x.got, x.want)

@@ -40,7 +40,8 @@ func makeGoals(c *scheduler.Campaign, seed uint64, kinds map[string]part) {
 // goal starts a goal of a source with the next id.
 func (m *goalMaker) goal(prefix string, s *scheduler.Source, bands ...string) scheduler.Goal {
 	m.n[prefix]++
-	return scheduler.Goal{ID: fmt.Sprintf("%s-%02d", prefix, m.n[prefix]), Source: s.Name, Bands: bands, Priority: pick(m.r, 1, 1, 1, 1, 1.5, 2, 0.5)}
+	return scheduler.Goal{ID: fmt.Sprintf("%s-%02d", prefix, m.n[prefix]), Source: s.Name, Bands: bands,
+		Priority: pick(m.r, 1, 1, 1, 1, 1.5, 2, 0.5)}
 }
 
 // cadence adds a target; wanted is the TOA uncertainty, 0 for none.
@@ -67,9 +68,11 @@ func (m *goalMaker) first(s *scheduler.Source) {
 	case faint:
 		wanted = 1 // some ten times better than can be had
 	case farSouth:
-		m.cadence(scheduler.Goal{ID: g.ID + "w", Source: s.Name, Bands: []string{"L"}, Telescopes: []string{wolkenried}, Priority: 1}, 14, 0)
+		m.cadence(scheduler.Goal{ID: g.ID + "w", Source: s.Name, Bands: []string{"L"}, Telescopes: []string{wolkenried}, Priority: 1}, 14,
+			0)
 	case scattered:
-		m.cadence(scheduler.Goal{ID: g.ID + "u", Source: s.Name, Bands: []string{"U"}, Telescopes: []string{wolkenried, quandong}, Priority: 1}, 14, 0)
+		m.cadence(scheduler.Goal{ID: g.ID + "u", Source: s.Name, Bands: []string{"U"}, Telescopes: []string{wolkenried, quandong},
+			Priority: 1}, 14, 0)
 	}
 	m.cadence(g, every, wanted)
 }
@@ -158,7 +161,8 @@ func (m *goalMaker) overlaps() {
 			if m.kinds[s.Name] != ordinary || !allReach(m.c, s, group) {
 				continue
 			}
-			g := scheduler.OverlapGoal{Goal: m.goal("ovl", s, "L"), Count: len(group), OverlapMin: pick(m.r, 15.0, 20, 20, 30), EveryD: pick(m.r, 21.0, 28, 28, 42)}
+			g := scheduler.OverlapGoal{Goal: m.goal("ovl", s, "L"), Count: len(group), OverlapMin: pick(m.r, 15.0, 20, 20, 30),
+				EveryD: pick(m.r, 21.0, 28, 28, 42)}
 			if m.r.chance(0.7) {
 				g.Telescopes = group
 			}
@@ -174,7 +178,8 @@ func (m *goalMaker) overlaps() {
 // from week to week.
 func (m *goalMaker) pairs() {
 	choices := []struct{ one, two, at string }{
-		{"L", "S", wolkenried}, {"U", "L", saltbush}, {"P", "L", kestrel}, {"L", "S", kvitvarden}, {"U", "L", quandong}, {"U", "S", saltbush}, {"U", "S", wolkenried},
+		{"L", "S", wolkenried}, {"U", "L", saltbush}, {"P", "L", kestrel}, {"L", "S", kvitvarden}, {"U", "L", quandong},
+		{"U", "S", saltbush}, {"U", "S", wolkenried},
 	}
 	order := m.r.shuffled(len(m.c.Sources))
 	for k := range pairCount {
@@ -184,7 +189,8 @@ func (m *goalMaker) pairs() {
 			if m.kinds[s.Name] != ordinary || !allReach(m.c, s, []string{choice.at}) {
 				continue
 			}
-			g := scheduler.BandPairGoal{Goal: m.goal("pair", s, choice.one, choice.two), WithinH: pick(m.r, 2.0, 3, 6, 24, 48), EveryD: pick(m.r, 14.0, 21, 28)}
+			g := scheduler.BandPairGoal{Goal: m.goal("pair", s, choice.one, choice.two), WithinH: pick(m.r, 2.0, 3, 6, 24, 48),
+				EveryD: pick(m.r, 14.0, 21, 28)}
 			m.c.BandPairGoals = append(m.c.BandPairGoals, g)
 			order = append(order[:n:n], order[n+1:]...)
 			break

@@ -126,7 +126,8 @@ func (p *past) joint(tables []*upTable, g *scheduler.OverlapGoal, source int, at
 	end := at.Add(time.Duration(minutes) * time.Minute)
 	var on []*upTable
 	for _, u := range tables {
-		if len(on) < g.Count && g.AllowsTelescope(u.tel.Code) && p.receiverFor(u, &g.Goal) != "" && p.free(u, at, end) && u.up(source, at, end) &&
+		if len(on) < g.Count && g.AllowsTelescope(u.tel.Code) && p.receiverFor(u, &g.Goal) != "" && p.free(u, at, end) &&
+			u.up(source, at, end) &&
 			!slices.ContainsFunc(on, func(o *upTable) bool { return o.tel == u.tel }) {
 			on = append(on, u)
 		}
@@ -283,7 +284,8 @@ func (p *past) partner(u *upTable, source int, receiver string) string {
 // not count.
 func (p *past) scan(u *upTable, source int, receiver string, start time.Time, minutes int) {
 	s := &p.c.Sources[source]
-	h := scheduler.HistoryScan{Source: s.Name, Telescope: u.tel.Code, Receiver: receiver, Start: start, Minutes: float64(minutes), Counted: !p.r.chance(0.06)}
+	h := scheduler.HistoryScan{Source: s.Name, Telescope: u.tel.Code, Receiver: receiver, Start: start, Minutes: float64(minutes),
+		Counted: !p.r.chance(0.06)}
 	if p.r.chance(0.05) {
 		h.Minutes -= float64(1 + p.r.below(minutes/2))
 	}

@@ -22,7 +22,8 @@ func onePin(c *scheduler.Campaign) []scheduler.Pin {
 		for s := range c.Sources {
 			// Away from the zenith, where the azimuth runs fast.
 			if u.up(s, start.Add(-30*time.Minute), end.Add(30*time.Minute)) && u.high[s][k] > 35 && u.high[s][k] < 70 {
-				return []scheduler.Pin{{Block: b.ID, Source: c.Sources[s].Name, Receiver: b.Receivers[len(b.Receivers)-1], Start: start, Minutes: 30}}
+				return []scheduler.Pin{{Block: b.ID, Source: c.Sources[s].Name, Receiver: b.Receivers[len(b.Receivers)-1], Start: start,
+					Minutes: 30}}
 			}
 		}
 	}

@@ -20,7 +20,8 @@ func lastServed(c *scheduler.Campaign, g *scheduler.CadenceTarget) (last time.Ti
 	for _, h := range c.History {
 		r := c.TelescopeByCode(h.Telescope).ReceiverByCode(h.Receiver)
 		m := radiometer(s, r)
-		if h.Counted && h.Source == g.Source && g.AllowsTelescope(h.Telescope) && len(g.BandsOf(r)) > 0 && m.Detectable() && h.Start.After(last) {
+		if h.Counted && h.Source == g.Source && g.AllowsTelescope(h.Telescope) && len(g.BandsOf(r)) > 0 &&
+			m.Detectable() && h.Start.After(last) {
 			last = h.Start
 		}
 	}
@@ -38,7 +39,8 @@ func TestHistoryWasPossible(t *testing.T) {
 				t.Fatal(err)
 			}
 			const slack = 0.02 // between grid instants
-			up := p.ElDeg > math.Max(tel.ElevationMinDeg, tel.Mask().ElevationDeg(p.AzDeg))-slack && p.ElDeg < tel.ElevationMaxDeg+slack &&
+			up := p.ElDeg > math.Max(tel.ElevationMinDeg, tel.Mask().ElevationDeg(p.AzDeg))-slack &&
+				p.ElDeg < tel.ElevationMaxDeg+slack &&
 				p.SunDeg > math.Max(tel.SunMinDeg, s.SunMinDeg)-slack
 			switch tel.Mount {
 			case scheduler.MountEquatorial:
@@ -47,7 +49,8 @@ func TestHistoryWasPossible(t *testing.T) {
 				up = up && math.Abs(p.HADeg)*4*math.Cos(p.DecDeg*math.Pi/180) < tel.TrackHalfMin+slack
 			}
 			if !up {
-				t.Errorf("%s at %s, %v: elevation %.2f, hour angle %.2f, Sun at %.2f", h.Source, h.Telescope, at, p.ElDeg, p.HADeg, p.SunDeg)
+				t.Errorf("%s at %s, %v: elevation %.2f, hour angle %.2f, Sun at %.2f", h.Source, h.Telescope, at,
+					p.ElDeg, p.HADeg, p.SunDeg)
 			}
 		}
 		if r := tel.ReceiverByCode(h.Receiver); r == nil {
@@ -93,7 +96,8 @@ func TestHistoryHasGaps(t *testing.T) {
 	for week := -pastWeeks; week < 0; week++ {
 		for _, tel := range kept.Telescopes {
 			n, receivers := scansIn(tel.Code, week)
-			closed := week == maintenanceWeek && tel.Code == wolkenried || week == snowWeek && tel.Code == kvitvarden || week == stormWeek && tel.Code == kestrel
+			closed := week == maintenanceWeek && tel.Code == wolkenried || week == snowWeek && tel.Code == kvitvarden ||
+				week == stormWeek && tel.Code == kestrel
 			if closed && n > 0 {
 				t.Errorf("%s made %d scans in week %d, when it was closed", tel.Code, n, week)
 			}
@@ -173,7 +177,8 @@ func TestHistoryServesOverlaps(t *testing.T) {
 // goalWith finds the one cadence target whose id ends so.
 func goalWith(t *testing.T, suffix byte) *scheduler.CadenceTarget {
 	t.Helper()
-	i := slices.IndexFunc(kept.CadenceTargets, func(g scheduler.CadenceTarget) bool { return g.ID[len(g.ID)-1] == suffix })
+	i := slices.IndexFunc(kept.CadenceTargets,
+		func(g scheduler.CadenceTarget) bool { return g.ID[len(g.ID)-1] == suffix })
 	if i < 0 {
 		t.Fatalf("no target ends in %c", suffix)
 	}
@@ -219,7 +224,8 @@ func TestOneIsBesideTheSun(t *testing.T) {
 		s := &kept.Sources[i]
 		near, up := 0, false
 		for hour := range 7 * 24 {
-			p, err := sky.Observe(kept.Telescopes[0].Site(), s.Star(), keptMonday.Add(time.Duration(hour)*time.Hour), kept.DUT1S)
+			p, err := sky.Observe(kept.Telescopes[0].Site(), s.Star(), keptMonday.Add(time.Duration(hour)*time.Hour),
+				kept.DUT1S)
 			if err != nil {
 				t.Fatal(err)
 			}

@@ -133,7 +133,8 @@ func candidate(r *random, p part, monday time.Time) astro.Star {
 
 // at is a star at a place rounded as a catalogue prints it.
 func at(raDeg, decDeg float64) astro.Star {
-	return astro.Star{RA: astro.FromDeg(round(astro.FromDeg(raDeg).Wrap().Deg(), 5)), Dec: astro.FromDeg(round(decDeg, 5)), PosEpochMJD: 57500}
+	return astro.Star{RA: astro.FromDeg(round(astro.FromDeg(raDeg).Wrap().Deg(), 5)), Dec: astro.FromDeg(round(decDeg, 5)),
+		PosEpochMJD: 57500}
 }
 
 // separationDeg is the angle between two stars.
@@ -173,8 +174,10 @@ func makeSource(r *random, p part, star astro.Star) scheduler.Source {
 	s := scheduler.Source{
 		Name: nameOf(star), RADeg: round(star.RA.Deg(), 5), DecDeg: round(star.Dec.Deg(), 5), PosEpochMJD: star.PosEpochMJD,
 		PMRAMasYr: round(7*r.normal(), 2), PMDecMasYr: round(7*r.normal(), 2),
-		PeriodS: significant(period, 9), DMPcCm3: round(dm, 3), FluxMJy: significant(flux, 3), FluxFreqMHz: 1400, SpectralIdx: round(-1.6+0.35*r.normal(), 2),
-		WidthS: significant(period*duty, 3), Scatter1GHzS: significant(scatter, 2), JitterUs1h: significant(math.Min(0.4, r.logNormal(0.08, 0.6)), 2),
+		PeriodS: significant(period, 9), DMPcCm3: round(dm, 3), FluxMJy: significant(flux, 3), FluxFreqMHz: 1400,
+		SpectralIdx: round(-1.6+0.35*r.normal(), 2),
+		WidthS:      significant(period*duty, 3), Scatter1GHzS: significant(scatter, 2),
+		JitterUs1h:  significant(math.Min(0.4, r.logNormal(0.08, 0.6)), 2),
 		ScanMinutes: pick(r, []int{20, 30, 45}, []int{25, 40, 60}, []int{30, 45, 60}, []int{30, 60}, []int{20, 40}),
 	}
 	if p == sunward {

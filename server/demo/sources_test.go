@@ -36,7 +36,8 @@ func TestNameOf(t *testing.T) {
 		ra, dec float64
 		want    string
 	}{
-		{63.0625, 18.5625, "SIM J0412+1833"}, {359.999, -0.01, "SIM J2359-0000"}, {0, 89.999, "SIM J0000+8959"}, {179.99, -65.99, "SIM J1159-6559"},
+		{63.0625, 18.5625, "SIM J0412+1833"}, {359.999, -0.01, "SIM J2359-0000"}, {0, 89.999, "SIM J0000+8959"},
+		{179.99, -65.99, "SIM J1159-6559"},
 	} {
 		if got := nameOf(astro.Star{RA: astro.FromDeg(x.ra), Dec: astro.FromDeg(x.dec)}); got != x.want {
 			t.Errorf("%v %v is named %s, want %s", x.ra, x.dec, got, x.want)
@@ -52,7 +53,8 @@ func TestSourcesArePlausible(t *testing.T) {
 		if s.PeriodS < 0.0015 || s.PeriodS > 0.02 || s.WidthS < 0.015*s.PeriodS || s.WidthS > 0.21*s.PeriodS {
 			t.Errorf("%s: period %v s, width %v s", s.Name, s.PeriodS, s.WidthS)
 		}
-		if s.FluxMJy < 0.1 || s.FluxMJy > 9 || s.DMPcCm3 < 5 || s.DMPcCm3 > 300 || s.JitterUs1h <= 0 || s.JitterUs1h > 0.4 {
+		if s.FluxMJy < 0.1 || s.FluxMJy > 9 || s.DMPcCm3 < 5 || s.DMPcCm3 > 300 || s.JitterUs1h <= 0 ||
+			s.JitterUs1h > 0.4 {
 			t.Errorf("%s: %v mJy, DM %v, jitter %v us", s.Name, s.FluxMJy, s.DMPcCm3, s.JitterUs1h)
 		}
 		if _, b := sensitivity.Galactic(s.Star()); math.Abs(b.Deg()) < 20 {
@@ -99,7 +101,8 @@ func TestBinariesArePlausible(t *testing.T) {
 			masses++
 			implied := func(m1 float64) float64 { return math.Pow(b.M2Msun*b.Sini, 3) / math.Pow(m1+b.M2Msun, 2) }
 			if f < 0.98*implied(1.7) || f > 1.02*implied(1.3) {
-				t.Errorf("%s: mass function %.4g, its masses imply %.4g to %.4g", kept.Sources[i].Name, f, implied(1.7), implied(1.3))
+				t.Errorf("%s: mass function %.4g, its masses imply %.4g to %.4g", kept.Sources[i].Name, f, implied(1.7),
+					implied(1.3))
 			}
 		}
 		if _, err := b.Elements(); err != nil {
@@ -109,7 +112,8 @@ func TestBinariesArePlausible(t *testing.T) {
 	if models[scheduler.BinaryKepler] < 3 || models[scheduler.BinaryELL1] < 5 || masses < 3 || masses == 14 {
 		t.Errorf("models %v, %d with masses", models, masses)
 	}
-	if shortest < 0.1 || shortest > 0.12 || longest < 140 || longest > 150 || roundest > 1e-5 || longestE < 0.55 || longestE > 0.6 {
+	if shortest < 0.1 || shortest > 0.12 || longest < 140 || longest > 150 || roundest > 1e-5 || longestE < 0.55 ||
+		longestE > 0.6 {
 		t.Errorf("periods %.3f to %.1f d, eccentricities %.2g to %.2f", shortest, longest, roundest, longestE)
 	}
 }

@@ -152,7 +152,8 @@ func TestLexerRefusesTheWrongKind(t *testing.T) {
 				continue
 			}
 			first := x.Err()
-			if first == nil || x.Kind() != Invalid || x.Skip() != nil || x.End() || x.NextItem(true) || x.BeginArray() || x.Err() != first {
+			if first == nil || x.Kind() != Invalid || x.Skip() != nil || x.End() || x.NextItem(true) ||
+				x.BeginArray() || x.Err() != first {
 				t.Errorf("%s of %s: a fault that does not stick, %v", name, text, first)
 			}
 		}
@@ -164,7 +165,8 @@ func TestLexerRefusesTheWrongKind(t *testing.T) {
 
 func TestSkipShowsScalars(t *testing.T) {
 	for _, c := range []struct{ text, want string }{
-		{` 12.5 `, "12.5"}, {`"a\"b"`, `"a\"b"`}, {"true", "true"}, {"null", "null"}, {"NaN", "NaN"}, {`{"a": [1, {"b": 2}]}`, ""}, {"[[], {}]", ""},
+		{` 12.5 `, "12.5"}, {`"a\"b"`, `"a\"b"`}, {"true", "true"}, {"null", "null"}, {"NaN", "NaN"},
+		{`{"a": [1, {"b": 2}]}`, ""}, {"[[], {}]", ""},
 	} {
 		x := New([]byte(c.text), 5)
 		if got := string(x.Skip()); got != c.want || !x.End() {
@@ -174,7 +176,8 @@ func TestSkipShowsScalars(t *testing.T) {
 }
 
 func TestKindString(t *testing.T) {
-	for k, want := range map[Kind]string{Invalid: "nothing", Object: "an object", Array: "a list", String: "a string", Number: "a number", Bool: "true or false", Null: "null", NotFinite: "not a finite number"} {
+	for k, want := range map[Kind]string{Invalid: "nothing", Object: "an object", Array: "a list", String: "a string",
+		Number: "a number", Bool: "true or false", Null: "null", NotFinite: "not a finite number"} {
 		if got := k.String(); got != want {
 			t.Errorf("%d is %q, want %q", k, got, want)
 		}
@@ -184,7 +187,8 @@ func TestKindString(t *testing.T) {
 // The lexer accepts what the standard library accepts, but for what it refuses
 // on purpose, and reads the same values.
 func FuzzLexer(f *testing.F) {
-	for _, s := range []string{`{"a": [1, -2.5e3, "x\u00e9\n", true, null, {}]}`, "[NaN, -Infinity]", `"\ud83d\ude00"`, `"\ud83d"`, "[[[[[]]]]]", "1 2", `{"a": 1, "a": 2}`, "[1,]", "-0.0e-0", "\xef\xbb\xbf{}"} {
+	for _, s := range []string{`{"a": [1, -2.5e3, "x\u00e9\n", true, null, {}]}`, "[NaN, -Infinity]", `"\ud83d\ude00"`,
+		`"\ud83d"`, "[[[[[]]]]]", "1 2", `{"a": 1, "a": 2}`, "[1,]", "-0.0e-0", "\xef\xbb\xbf{}"} {
 		f.Add([]byte(s))
 	}
 	f.Fuzz(func(t *testing.T, data []byte) {
@@ -207,7 +211,8 @@ func FuzzLexer(f *testing.F) {
 			}
 		case ok && !strings.ContainsAny(text, "nN"):
 			t.Fatalf("%q is no JSON but accepted as %v", text, got)
-		case !ok && json.Valid(data) && utf8.Valid(data) && !strings.Contains(text, `\u`) && strings.Count(text, "[")+strings.Count(text, "{") < 50:
+		case !ok && json.Valid(data) && utf8.Valid(data) && !strings.Contains(text, `\u`) &&
+			strings.Count(text, "[")+strings.Count(text, "{") < 50:
 			t.Fatalf("%q is JSON, but %v", text, x.Err())
 		}
 	})

@@ -349,4 +349,6 @@ func somePrices(m *model) map[string]float64 {
 }
 
 // week is the horizon of a whole campaign.
-func week(c *scheduler.Campaign) scheduler.Horizon { return scheduler.Horizon{From: c.Start, To: c.End} }
+func week(c *scheduler.Campaign) scheduler.Horizon {
+	return scheduler.Horizon{From: c.Start, To: c.End}
+}

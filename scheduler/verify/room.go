@@ -53,7 +53,7 @@ func (k *checker) checkInBlock(s *scan) {
 		if s.start < l[1] && s.end > l[0] {
 			k.badScan(s, KindLost, none, "uses the lost part from %s to %s", at(l[0]), at(l[1]))
 		}
-		if have := s.start - l[1]; s.start >= l[0] && have+slack < ready {
+		if have := s.start - l[1]; have >= 0 && have+slack < ready {
 			k.badScan(s, KindSetup, figures{have.seconds(), ready.seconds(), "s"},
 				"begins %.0f s after the lost part that ends at %s; %.0f s of setup and calibration are needed", have.seconds(), at(l[1]), ready.seconds())
 		}

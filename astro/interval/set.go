@@ -19,7 +19,10 @@ type Interval[T Number] struct {
 }
 
 // Empty reports whether no number lies in the interval.
-func (i Interval[T]) Empty() bool { return !(i.Lo < i.Hi) }
+func (i Interval[T]) Empty() bool {
+	holds := i.Lo < i.Hi // not Lo >= Hi, which is false for NaN
+	return !holds
+}
 
 // Length is Hi - Lo, 0 for an empty interval.
 func (i Interval[T]) Length() T {

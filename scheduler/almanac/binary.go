@@ -79,6 +79,7 @@ func (o *Orbit) At(t time.Time) (OrbitState, error) {
 	}
 	utc := timescale.UTC(t)
 	s := o.elements.At(bary)
+	// The number of the orbit is that of the last periastron: the count's floor.
 	peri := o.elements.TurnsAt(orbit.Periastron, bary)
 	return OrbitState{
 		At:              t.UTC(),
@@ -140,7 +141,7 @@ func (o *Orbit) Next(after time.Time, n int) ([]OrbitEvent, error) {
 	}
 	var list []OrbitEvent
 	for _, p := range o.points() {
-		t := after
+		t := after // from each passage on to the next
 		for range n {
 			ev, err := o.elements.Next(p.Point(), o.star, t)
 			var beyond *astro.RangeError

@@ -59,6 +59,8 @@ func newLimits(tel *scheduler.Telescope, src *scheduler.Source) *limits {
 
 // check is what keeps a source down that stands at p; nothing: it is up.
 func (l *limits) check(p *Sample) Cause {
+	// All that hold are kept, not the first: lifting one limit then shows what
+	// is left.
 	var c Cause
 	if p.ElDeg < l.tel.ElevationMinDeg {
 		c |= Low
@@ -89,6 +91,7 @@ func (l *limits) inReach(p *Sample) bool {
 		cosDec := max(math.Cos(p.DecDeg*math.Pi/180), 1e-6)
 		return math.Abs(p.HADeg)*4 <= l.tel.TrackHalfMin/cosDec
 	}
+	// One instant needs some turn of the motor; a scan needs one for all of it.
 	lo, hi := sky.MotorTurns(p.AzDeg, p.AzDeg, l.tel.AzimuthRangeDeg)
 	return lo <= hi
 }

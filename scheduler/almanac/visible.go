@@ -78,6 +78,8 @@ func Track(tel *scheduler.Telescope, src *scheduler.Source, dut1S float64, from,
 			step, to.Sub(from), MaxSamples)
 	}
 	n := int(to.Sub(from)/step) + 1
+	// One window for the whole stretch: sidereal time, precession, nutation and
+	// the Sun are worked out once and shared by its samples.
 	w, err := sky.NewWindow(tel.Site(), from, step, n, dut1S)
 	if err != nil {
 		return nil, fmt.Errorf("source %s at %s: %w", src.Name, tel.Code, err)
@@ -124,6 +126,8 @@ func When(tel *scheduler.Telescope, src *scheduler.Source, dut1S float64, from, 
 	if samples[len(samples)-1].At.Before(to) {
 		samples = append(samples, last)
 	}
+	// Walk along the samples; where one is up and its neighbour is not, the
+	// edge between them is narrowed down.
 	v := &Visible{Highest: samples[0], SunMin: 180, Down: map[Cause]time.Duration{}}
 	for i, s := range samples {
 		v.note(samples, i)
@@ -145,6 +149,7 @@ func When(tel *scheduler.Telescope, src *scheduler.Source, dut1S float64, from, 
 			open.End, open.EndLSTDeg = edge.At, edge.LSTDeg
 		}
 	}
+	// Still up when the time asked for ends.
 	if n := len(v.Up); n > 0 && v.Up[n-1].End.IsZero() {
 		v.Up[n-1].End, v.Up[n-1].EndLSTDeg, v.Up[n-1].CutEnd = last.At, last.LSTDeg, true
 	}
@@ -153,7 +158,8 @@ func When(tel *scheduler.Telescope, src *scheduler.Source, dut1S float64, from, 
 	return v, err
 }
 
-// note gathers the extremes and how long each cause holds.
+// note gathers the extremes and how long each cause holds: a sample stands for
+// the time up to the next one.
 func (v *Visible) note(samples []Sample, i int) {
 	s := samples[i]
 	if s.ElDeg > v.Highest.ElDeg {
@@ -216,6 +222,6 @@ func transits(tel *scheduler.Telescope, src *scheduler.Source, dut1S float64, fr
 			return nil, err
 		}
 		list = append(list, s)
-		t = at.Add(time.Hour)
+		t = at.Add(time.Hour) // the next is a sidereal day later
 	}
 }

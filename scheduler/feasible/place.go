@@ -173,4 +173,3 @@ func (l *Length) Allowed(step int) bool {
 	}
 	return false
 }
-

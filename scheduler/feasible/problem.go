@@ -135,3 +135,6 @@ type Reject struct {
 	SunDeg    float64 // least separation from the Sun
 	Longest   int     // steps of the longest stretch that is up
 }
+
+// PlaceIndex is the index of a source's place in Places, or -1.
+func (b *Block) PlaceIndex(source int) int { return b.at[source] }

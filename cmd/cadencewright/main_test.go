@@ -22,6 +22,7 @@ func TestScripts(t *testing.T) {
 		RequireExplicitExec: true,
 		RequireUniqueNames:  true,
 		Cmds:                scriptCommands,
+		Condition:           scriptCondition,
 		Setup: func(e *testscript.Env) error {
 			e.Setenv("CAMPAIGNS", testdata.Path("campaigns"))
 			return nil

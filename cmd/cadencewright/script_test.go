@@ -2,10 +2,13 @@ package main
 
 import (
 	"errors"
+	"fmt"
 	"os"
 	"os/exec"
+	"path/filepath"
 	"strconv"
 	"strings"
+	"time"
 
 	"github.com/rogpeppe/go-internal/testscript"
 )
@@ -15,6 +18,24 @@ var scriptCommands = map[string]func(ts *testscript.TestScript, neg bool, args [
 	"exits":   exits,
 	"bigfile": bigFile,
 	"nofiles": noFiles,
+	"waitfor": waitFor,
+}
+
+// waitFor waits until a file of the given pattern is there: a program in the
+// background has come so far.
+func waitFor(ts *testscript.TestScript, neg bool, args []string) {
+	if neg || len(args) != 1 {
+		ts.Fatalf("usage: waitfor PATTERN")
+	}
+	for range 3000 {
+		found, err := filepath.Glob(ts.MkAbs(args[0]))
+		ts.Check(err)
+		if len(found) > 0 {
+			return
+		}
+		time.Sleep(10 * time.Millisecond)
+	}
+	ts.Fatalf("no file %s in half a minute", args[0])
 }
 
 // exits runs a program and checks its exit code: "exits 2 cadencewright x".
@@ -61,4 +82,13 @@ func noFiles(ts *testscript.TestScript, neg bool, args []string) {
 			ts.Fatalf("%s was left behind", e.Name())
 		}
 	}
+}
+
+// scriptCondition is [devfull]: there is a device that is always full.
+func scriptCondition(name string) (bool, error) {
+	if name != "devfull" {
+		return false, fmt.Errorf("no condition %q", name)
+	}
+	_, err := os.Stat("/dev/full")
+	return err == nil, nil
 }

@@ -1,0 +1,182 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"flag"
+	"fmt"
+	"math"
+	"runtime"
+	"time"
+
+	"cadencewright/scheduler"
+	"cadencewright/scheduler/feasible"
+	"cadencewright/scheduler/solve"
+	"cadencewright/scheduler/verify"
+)
+
+var planCommand = command{
+	name:  "plan",
+	args:  "CAMPAIGN.json",
+	short: "plan a week: fill the blocks and prove how good the plan is",
+	long: `Makes a plan for the blocks that start in a week, or in another stretch of time:
+which source is observed when, where and for how long, what that earns, what
+stays unmet, and a certificate of how good any plan could be. The file appears
+whole or not at all. The same campaign, seed and effort give the same plan, to
+the byte; with --seconds the clock decides how far the search goes. Ctrl-C ends
+the search and keeps the best plan found so far; a second one ends the program.`,
+	examples: []string{
+		"cadencewright plan campaign.json --week 2027-W03 --out plan.json",
+		"cadencewright plan campaign.json --from 2027-01-18 --to 2027-02-01 --seconds 60 --out plan.json",
+		"cadencewright plan campaign.json --effort 50000 --seed 7 > plan.json",
+	},
+	setup: func(flags *flag.FlagSet) action {
+		q := &planQuestion{}
+		q.horizon.declare(flags)
+		flags.StringVar(&q.out, "out", "-", "`FILE` to write the plan to; - is standard output")
+		flags.Int64Var(&q.effort, "effort", 0, fmt.Sprintf("how much to search, in thousands of `STEPS`; %d if left out", solve.DefaultEffort))
+		flags.Float64Var(&q.seconds, "seconds", 0, "stop the search after so many `SECONDS`, and search until then if --effort is left out")
+		flags.Uint64Var(&q.seed, "seed", 0, "`NUMBER` that the search's random choices start from")
+		flags.IntVar(&q.workers, "workers", runtime.GOMAXPROCS(0), "how many `CORES` may share the work; it does not change the plan")
+		flags.BoolVar(&q.quiet, "quiet", false, "no progress and no summary")
+		return q.run
+	},
+}
+
+// planQuestion is what was asked, as it stood on the command line.
+type planQuestion struct {
+	horizon horizonFlags
+	out     string
+	effort  int64
+	seconds float64
+	seed    uint64
+	workers int
+	quiet   bool
+}
+
+// endlessEffort is more than any search spends before its time is up.
+const endlessEffort = 1 << 40
+
+// check reports flags that are out of range.
+func (q *planQuestion) check() error {
+	switch {
+	case q.effort < 0 || q.effort > endlessEffort:
+		return usagef("--effort is %d; allowed is 1 to %d, in thousands of steps", q.effort, int64(endlessEffort))
+	case !(q.seconds >= 0 && q.seconds <= 7*86400):
+		return usagef("--seconds is %g; allowed is up to a week, 604800", q.seconds)
+	case q.workers < 1 || q.workers > 1024:
+		return usagef("--workers is %d; allowed is 1 to 1024", q.workers)
+	}
+	return nil
+}
+
+// run makes the plan and writes it.
+func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error {
+	if err := exactly(args, "CAMPAIGN.json"); err != nil {
+		return err
+	}
+	if err := q.check(); err != nil {
+		return err
+	}
+	c, err := readCampaign(std, args[0])
+	if err != nil {
+		return err
+	}
+	h, err := q.horizon.horizon(c)
+	if err != nil {
+		return err
+	}
+	// Before the search, so that a folder that cannot be written to costs none.
+	out, err := openOutput(std, q.out)
+	if err != nil {
+		return err
+	}
+	defer out.discard()
+	started := time.Now()
+	problem, result, err := q.solve(ctx, std, c, h)
+	if err != nil {
+		return err
+	}
+	if err := soundPlan(c, result.Plan); err != nil {
+		return err
+	}
+	data, err := scheduler.WritePlan(result.Plan)
+	if err != nil {
+		return err
+	}
+	if err := out.commit(data); err != nil {
+		return err
+	}
+	if !q.quiet {
+		fmt.Fprint(std.err, planSummary(problem, result, time.Since(started)))
+	}
+	return nil
+}
+
+// solve searches until the effort or the time is spent or the context ends.
+func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campaign, h scheduler.Horizon) (*feasible.Problem, *solve.Result, error) {
+	if q.seconds > 0 {
+		var cancel context.CancelFunc
+		ctx, cancel = context.WithTimeout(ctx, time.Duration(q.seconds*float64(time.Second)))
+		defer cancel()
+	}
+	problem, err := feasible.Build(c, h)
+	if err != nil {
+		return nil, nil, err
+	}
+	line := &progressLine{now: time.Now}
+	if !q.quiet {
+		line = newProgressLine(std.err)
+	}
+	defer line.clear()
+	effort := q.effort
+	if effort == 0 && q.seconds > 0 {
+		effort = endlessEffort
+	}
+	result, err := solve.Solve(problem, solve.Options{
+		Seed: q.seed, Effort: effort, Workers: q.workers,
+		Stop:     func() bool { return ctx.Err() != nil },
+		Progress: func(p solve.Progress) { line.show(p.Effort, p.Score, known(p.Bound)) },
+	})
+	return problem, result, err
+}
+
+// known is the bound, or 0 where there is none yet.
+func known(bound float64) float64 {
+	if math.IsInf(bound, 0) {
+		return 0
+	}
+	return bound
+}
+
+// soundPlan re-checks the plan's scans and score by the code that shares
+// nothing with the planner, so that a fault of the planner never reaches a
+// telescope.
+func soundPlan(c *scheduler.Campaign, p *scheduler.Plan) error {
+	report, err := verify.Check(c, p, verify.Options{SkipBound: true})
+	if err != nil {
+		return err
+	}
+	if report.OK() {
+		return nil
+	}
+	return fmt.Errorf("the plan that was made breaks %d rules, which is a fault of the program; nothing was written. The first: %w",
+		len(report.Violations), errors.New(report.Violations[0].String()))
+}
+
+// planSummary says in a few lines what came out.
+func planSummary(problem *feasible.Problem, r *solve.Result, took time.Duration) string {
+	p := r.Plan
+	blocks := map[string]bool{}
+	for _, s := range p.Scans {
+		blocks[s.Block] = true
+	}
+	all := len(problem.Units.Units)
+	status := string(r.Status)
+	if r.Status == solve.Stopped {
+		status = "stopped, this is the best plan so far"
+	}
+	return fmt.Sprintf("%s: score %.3f of %.3f possible, bound %.3f, gap %.2f %%\n%d scans in %d of %d blocks, %d of %d units met; %s after %.1f s\n",
+		describeHorizon(scheduler.Horizon{From: p.From, To: p.To}), p.Score, p.Possible, p.Bound, 100*gap(p.Score, p.Bound),
+		len(p.Scans), len(blocks), len(problem.Blocks), all-len(p.Unmet), all, status, took.Seconds())
+}

@@ -82,11 +82,17 @@ func TestPlacesStayFinite(t *testing.T) {
 func TestWindowRefuses(t *testing.T) {
 	at := time.Date(2027, 1, 1, 0, 0, 0, 0, time.UTC)
 	for name, f := range map[string]func() error{
-		"no samples":  func() error { _, err := sky.NewWindow(astro.Geodetic{}, at, time.Minute, 0, 0); return err },
-		"too many":    func() error { _, err := sky.NewWindow(astro.Geodetic{}, at, time.Minute, 1<<20, 0); return err },
-		"no step":     func() error { _, err := sky.NewWindow(astro.Geodetic{}, at, 0, 5, 0); return err },
-		"before 1972": func() error { _, err := sky.NewWindow(astro.Geodetic{}, at.AddDate(-60, 0, 0), time.Minute, 5, 0); return err },
-		"after 2099":  func() error { _, err := sky.NewWindow(astro.Geodetic{}, at.AddDate(100, 0, 0), time.Minute, 5, 0); return err },
+		"no samples": func() error { _, err := sky.NewWindow(astro.Geodetic{}, at, time.Minute, 0, 0); return err },
+		"too many":   func() error { _, err := sky.NewWindow(astro.Geodetic{}, at, time.Minute, 1<<20, 0); return err },
+		"no step":    func() error { _, err := sky.NewWindow(astro.Geodetic{}, at, 0, 5, 0); return err },
+		"before 1972": func() error {
+			_, err := sky.NewWindow(astro.Geodetic{}, at.AddDate(-60, 0, 0), time.Minute, 5, 0)
+			return err
+		},
+		"after 2099": func() error {
+			_, err := sky.NewWindow(astro.Geodetic{}, at.AddDate(100, 0, 0), time.Minute, 5, 0)
+			return err
+		},
 	} {
 		if f() == nil {
 			t.Errorf("%s: no error", name)

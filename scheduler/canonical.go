@@ -81,6 +81,8 @@ func (c *Campaign) Canonical() *Campaign {
 	return d
 }
 
+// compareBlocks is the order in which blocks are shown and planned: by start,
+// then telescope, then id.
 func compareBlocks(a, b Block) int {
 	return cmp.Or(a.Start.Compare(b.Start), cmp.Compare(a.Telescope, b.Telescope), cmp.Compare(a.ID, b.ID))
 }
@@ -98,6 +100,7 @@ func compareHistory(a, b HistoryScan) int {
 		cmp.Compare(a.Receiver, b.Receiver), cmp.Compare(a.Minutes, b.Minutes), counted(a)-counted(b))
 }
 
+// comparePins looks at every field, as compareHistory does.
 func comparePins(a, b Pin) int {
 	return cmp.Or(a.Start.Compare(b.Start), cmp.Compare(a.Block, b.Block), cmp.Compare(a.Source, b.Source),
 		cmp.Compare(a.Receiver, b.Receiver), cmp.Compare(a.Minutes, b.Minutes))

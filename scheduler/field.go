@@ -1,7 +1,6 @@
 package scheduler
 
 import (
-	"strconv"
 	"strings"
 )
 
@@ -137,8 +136,8 @@ func (t *table) read(r *fileReader, obj any) {
 			f.kind.reset(f.at(obj))
 		}
 	}
-	var seen uint64
-	hint := 0
+	var seen uint64 // a bit for each field; tables have fewer than 64
+	hint := 0       // where the next key is expected
 	r.lex.BeginObject()
 	for first := true; ; first = false {
 		key, ok := r.lex.NextKey(first)
@@ -214,6 +213,9 @@ func (t *table) complete(r *fileReader, obj any, seen uint64) {
 }
 
 // foreign says that a field is for objects of another selector value.
+//
+// The message names the values that the field belongs to and the one that this
+// object has.
 func (t *table) foreign(f *field, selected string) string {
 	return f.key + " belongs to " + t.selector + " " + strings.Join(strings.Fields(f.only), " and ") +
 		"; this one is " + selected
@@ -293,13 +295,4 @@ func (t *table) write(w *writer, obj any) {
 		w.raw("\n")
 	}
 	w.raw("}")
-}
-
-// quote shows text inside a message, cut where it is long.
-func quote(s string) string {
-	const most = 60
-	if r := []rune(s); len(r) > most {
-		s = string(r[:most]) + "…"
-	}
-	return strconv.Quote(s)
 }

@@ -54,7 +54,13 @@ func (c *checker) name() string {
 }
 
 // bad reports a problem at the present place.
-func (c *checker) bad(format string, args ...any) { c.add(c.pointer(), format, args...) }
+func (c *checker) bad(format string, args ...any) {
+	if c.full() {
+		c.more++
+		return
+	}
+	c.add(c.pointer(), format, args...)
+}
 
 // fileReader is a checker that takes its values from a file.
 type fileReader struct {

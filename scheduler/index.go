@@ -197,11 +197,11 @@ func minutes(m float64) time.Duration {
 // are refused.
 func loadZone(name string) (*time.Location, error) {
 	if name == "" || name == "Local" {
-		return nil, Errorf(ErrInvalid, "time zone %q is not an IANA name such as Europe/Berlin", name)
+		return nil, Errorf(ErrInvalid, "time zone %s is not an IANA name such as Europe/Berlin", quote(name))
 	}
 	loc, err := time.LoadLocation(name)
 	if err != nil {
-		return nil, Errorf(ErrInvalid, "time zone %q is not an IANA name such as Europe/Berlin", name)
+		return nil, Errorf(ErrInvalid, "time zone %s is not an IANA name such as Europe/Berlin", quote(name))
 	}
 	return loc, nil
 }

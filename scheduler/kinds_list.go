@@ -7,6 +7,8 @@ type names struct{ least, most int }
 
 func (k names) reset(to any) { *to.(*[]string) = nil }
 
+// read puts a stand-in where an item is no string, so that the places of the
+// others stay right.
 func (k names) read(r *fileReader, to any) {
 	p := to.(*[]string)
 	ok := r.list("a list of strings", k.most, func(int) {
@@ -81,6 +83,7 @@ func (k losses) read(r *fileReader, to any) {
 	}
 }
 
+// check wants all 24 or none; 1 would leave no band at all and is not allowed.
 func (k losses) check(c *checker, from any) {
 	v := *from.(*[]float64)
 	if len(v) != 24 {
@@ -119,6 +122,7 @@ type lengths struct{}
 
 func (k lengths) reset(to any) { *to.(*[]int) = nil }
 
+// read refuses fractions here, since the Go field cannot hold them.
 func (k lengths) read(r *fileReader, to any) {
 	p := to.(*[]int)
 	good := true

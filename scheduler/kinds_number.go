@@ -58,16 +58,10 @@ func (k number) allowed() string {
 	return s
 }
 
-// short is a number as a person writes it.
-func short(v float64) string {
-	if a := math.Abs(v); a >= 1e7 || a != 0 && a < 1e-4 {
-		return strconv.FormatFloat(v, 'g', -1, 64)
-	}
-	return strconv.FormatFloat(v, 'f', -1, 64)
-}
-
 func (k number) reset(to any) { *to.(*float64) = k.standard }
 
+// read keeps the value even where it is out of range: the problem is reported,
+// and rules between values know not to look at it.
 func (k number) read(r *fileReader, to any) {
 	if v, ok := r.number(); ok {
 		*to.(*float64) = v
@@ -88,6 +82,8 @@ func (k number) isDefault(from any) bool { return *from.(*float64) == k.standard
 
 func (k number) write(w *writer, from any) { w.number(*from.(*float64)) }
 
+// schema says the same range. A default of 0 is not written: it mostly stands
+// for "none" and is not a value of the range.
 func (k number) schema() map[string]any {
 	s := map[string]any{"type": "number"}
 	if !math.IsInf(k.lo, -1) {
@@ -113,6 +109,8 @@ type integer struct {
 
 func (k integer) reset(to any) { *to.(*int) = k.standard }
 
+// read takes any spelling of a whole number and refuses a fraction before the
+// range is looked at.
 func (k integer) read(r *fileReader, to any) {
 	v, ok := r.number()
 	if !ok {
@@ -206,6 +204,8 @@ func (k span) read(r *fileReader, to any) {
 	}
 }
 
+// check reports each end at its own place; that they are in order is only looked
+// at where both are good.
 func (k span) check(c *checker, from any) {
 	v := *from.(*[2]float64)
 	limit := within(k.lo, k.hi, k.unit)

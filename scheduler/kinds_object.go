@@ -22,6 +22,7 @@ type optional[T any] struct{ table *table }
 
 func (k optional[T]) reset(to any) { *to.(**T) = nil }
 
+// read takes an object alone: null is not how a file says that there is none.
 func (k optional[T]) read(r *fileReader, to any) {
 	if r.lex.Kind() != strictjson.Object {
 		r.expectObject()
@@ -45,6 +46,8 @@ type list[T any] struct {
 
 func (k list[T]) reset(to any) { *to.(*[]T) = nil }
 
+// read appends items as they come. One that is no object leaves a zero value,
+// so that the places of the others stay right.
 func (k list[T]) read(r *fileReader, to any) {
 	p := to.(*[]T)
 	ok := r.list("a list", k.most, func(int) {
@@ -78,6 +81,7 @@ func (k list[T]) check(c *checker, from any) {
 
 func (k list[T]) isDefault(from any) bool { return len(*from.(*[]T)) == 0 }
 
+// write puts every item on a line of its own, one blank deeper than the list.
 func (k list[T]) write(w *writer, from any) {
 	items := *from.(*[]T)
 	w.raw("[")

@@ -7,6 +7,8 @@ type corners struct{}
 
 func (k corners) reset(to any) { *to.(*[]HorizonPoint) = nil }
 
+// read refuses an empty mask, which nobody writes on purpose; in memory it is
+// the same as none.
 func (k corners) read(r *fileReader, to any) {
 	p := to.(*[]HorizonPoint)
 	good := true
@@ -28,6 +30,8 @@ var (
 	maskElevation = within(-90, 90, "degrees")
 )
 
+// check wants azimuths in ascending order, so that the mask is one line round
+// the horizon; from the last corner it goes on to the first.
 func (k corners) check(c *checker, from any) {
 	v := *from.(*[]HorizonPoint)
 	if len(v) > MaxHorizon {
@@ -103,6 +107,7 @@ func (k spans) read(r *fileReader, to any) {
 	})
 }
 
+// check looks at the instants alone; order and place need the block.
 func (k spans) check(c *checker, from any) {
 	v := *from.(*[]Span)
 	if len(v) > MaxLost {
@@ -140,6 +145,3 @@ func (k spans) schema() map[string]any {
 	return map[string]any{"type": "array", "maxItems": MaxLost, "items": map[string]any{
 		"type": "array", "minItems": 2, "maxItems": 2, "items": instant{}.schema()}}
 }
-
-// spanText shows a stretch of time inside a message.
-func spanText(a, b time.Time) string { return instantText(a) + " to " + instantText(b) }

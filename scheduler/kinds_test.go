@@ -71,6 +71,7 @@ func TestAllowedInWords(t *testing.T) {
 		{orList([]string{"a", "b", "c"}), "a, b or c"},
 		{orList([]string{"a"}), "a"},
 		{orList(nil), ""},
+		{few([]string{"L1", "W1"}), "L1, W1"}, {few(strings.Split("abcdefghijk", "")), "a, b, c, d, e, f, g, h and 3 more"}, {few(nil), ""},
 		{short(0.00005), "5e-05"}, {short(123456.5), "123456.5"}, {short(1e7), "1e+07"}, {short(-0.5), "-0.5"},
 		{short(0), "0"},
 		{quote("a\n\"b"), `"a\n\"b"`}, {quote(strings.Repeat("é", 61)), `"` + strings.Repeat("é", 60) + `…"`},

@@ -90,20 +90,12 @@ func (k choice) schema() map[string]any {
 	return map[string]any{"type": "string", "enum": []string(k)}
 }
 
-// orList is "a, b or c".
-func orList(words []string) string {
-	if len(words) < 2 {
-		return strings.Join(words, "")
-	}
-	last := len(words) - 1
-	return strings.Join(words[:last], ", ") + " or " + words[last]
-}
-
 // literal is the format name that a file starts with; it has no Go field.
 type literal string
 
 func (k literal) reset(any) {}
 
+// read keeps a wrong format apart from other problems: see wrongFormat.
 func (k literal) read(r *fileReader, _ any) {
 	at := r.pointer()
 	v, ok := r.text("a string")
@@ -167,6 +159,7 @@ func (k instant) read(r *fileReader, to any) {
 	k.check(&r.checker, to)
 }
 
+// check keeps to the years in which the time scales are known.
 func (k instant) check(c *checker, from any) {
 	t := *from.(*time.Time)
 	switch {

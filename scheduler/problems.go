@@ -68,6 +68,9 @@ func (r *reporter) add(pointer, format string, args ...any) {
 	r.found = append(r.found, Problem{pointer, fmt.Sprintf(format, args...)})
 }
 
+// full reports whether a further problem would only be counted.
+func (r *reporter) full() bool { return len(r.found) >= MaxProblems && len(r.bad) >= maxBadPointers }
+
 // count is how many problems there are so far.
 func (r *reporter) count() int { return len(r.found) + r.more }
 

@@ -98,22 +98,22 @@ func thingAt(c *Campaign, pointer string) string {
 		return ""
 	}
 	i, err := strconv.Atoi(parts[2])
-	if err != nil {
+	if err != nil || i < 0 {
 		return ""
 	}
 	pick := func(n int, name func() string, before string) string {
 		if i >= n || name() == "" {
 			return ""
 		}
-		return before + strings.Trim(quote(name()), `"`)
+		return before + brief(name())
 	}
 	switch parts[1] {
 	case "telescopes":
 		t := pick(len(c.Telescopes), func() string { return c.Telescopes[i].Code }, "telescope ")
 		if len(parts) > 4 && parts[3] == "receivers" && t != "" {
 			j, err := strconv.Atoi(parts[4])
-			if err == nil && j < len(c.Telescopes[i].Receivers) && c.Telescopes[i].Receivers[j].Code != "" {
-				return t + ", receiver " + c.Telescopes[i].Receivers[j].Code
+			if err == nil && j >= 0 && j < len(c.Telescopes[i].Receivers) && c.Telescopes[i].Receivers[j].Code != "" {
+				return t + ", receiver " + brief(c.Telescopes[i].Receivers[j].Code)
 			}
 		}
 		return t

@@ -44,7 +44,9 @@ const (
 	kepler, ell1               = string(BinaryKepler), string(BinaryELL1)
 )
 
-// campaignFile is the whole file.
+// campaignFile is the whole file. Its keys stand on lines of their own, and so
+// do the items of its lists, so that two versions of a file compare well line
+// by line.
 var campaignFile = table{what: "a campaign file", lines: true, fields: []field{
 	{key: "format", need: true, kind: literal(CampaignFormat), doc: "format of this file"},
 	req("campaign", nested{&campaignHead}, func(c *Campaign) *Campaign { return c }, "the campaign itself"),
@@ -78,6 +80,9 @@ var campaignHead = table{what: "the campaign", fields: []field{
 	opt("dut1_s", within(-1, 1, "s"), func(c *Campaign) *float64 { return &c.DUT1S }, "UT1-UTC, s"),
 }}
 
+// telescopeTable has the fields of all mounts; "mount" says which belong. The
+// overheads are the model's: setup before the first scan of a block, calibration
+// before every scan, switch where the receiver differs, settle after a slew.
 var telescopeTable = table{what: "a telescope", selector: "mount", choices: []string{altaz, equatorial, transit}, fields: []field{
 	req("code", text{}, func(t *Telescope) *string { return &t.Code }, "short name, unique in the campaign"),
 	req("name", text{}, func(t *Telescope) *string { return &t.Name }, "full name"),
@@ -121,6 +126,8 @@ var telescopeTable = table{what: "a telescope", selector: "mount", choices: []st
 	req("receivers", list[Receiver]{&receiverTable, 1, MaxReceivers}, func(t *Telescope) *[]Receiver { return &t.Receivers }, "receivers"),
 }}
 
+// receiverTable says what the radiometer equation needs. A receiver with
+// several bands serves a goal in any of them, at the one centre frequency.
 var receiverTable = table{what: "a receiver", fields: []field{
 	req("code", text{}, func(r *Receiver) *string { return &r.Code }, "short name, unique in the telescope"),
 	req("bands", names{1, MaxBands}, func(r *Receiver) *[]string { return &r.Bands }, "labels of its bands"),
@@ -137,6 +144,9 @@ var receiverTable = table{what: "a receiver", fields: []field{
 	opt("rfi_loss", losses{}, func(r *Receiver) *[]float64 { return &r.RFILoss }, "part of the band lost in each local hour"),
 }}
 
+// sourceTable describes a pulsar. The pulse width is less than the period; from
+// nine tenths of it on (scattering included) the model takes the pulsar as not
+// detectable, which is a plan's business and no error.
 var sourceTable = table{what: "a source", fields: []field{
 	req("name", text{}, func(s *Source) *string { return &s.Name }, "name, unique in the campaign"),
 	req("ra_deg", within(0, 360, "degrees"), func(s *Source) *float64 { return &s.RADeg }, "right ascension (ICRS), degrees"),
@@ -161,6 +171,8 @@ var sourceTable = table{what: "a source", fields: []field{
 	opt("binary", optional[Binary]{&binaryTable}, func(s *Source) **Binary { return &s.Binary }, "orbit; absent for a single pulsar"),
 }}
 
+// binaryTable has the fields of both models; "model" says which belong. Epochs
+// are TDB at the solar-system barycentre.
 var binaryTable = table{what: "a binary", selector: "model", choices: []string{kepler, ell1}, fields: []field{
 	req("model", choice{kepler, ell1}, func(b *Binary) *string { return (*string)(&b.Model) }, "binary model"),
 	req("pb_d", orbitDays, func(b *Binary) *float64 { return &b.PbD }, "orbital period, d"),
@@ -194,6 +206,8 @@ func goalFields[T any](get func(*T) *Goal, more ...field) []field {
 	}, more...)
 }
 
+// cadenceTable: an early_d of 0 is meant (no scan counts early) and differs from
+// an absent one.
 var cadenceTable = table{what: "a cadence target", fields: goalFields(func(g *CadenceTarget) *Goal { return &g.Goal },
 	req("every_d", days, func(g *CadenceTarget) *float64 { return &g.EveryD }, "wanted interval, d"),
 	opt("early_d", within(0, 1e5, "d"), func(g *CadenceTarget) *float64 { return &g.EarlyD },
@@ -202,6 +216,9 @@ var cadenceTable = table{what: "a cadence target", fields: goalFields(func(g *Ca
 	opt("toa_us", above(0, 1e9, "us"), func(g *CadenceTarget) *float64 { return &g.TOAUs }, "wanted TOA uncertainty, us"),
 )}
 
+// phaseTable: windows are numbered by their order in the list, from 0, so the
+// order is part of the meaning. A list without windows is allowed and asks for
+// nothing.
 var phaseTable = table{what: "a phase goal", fields: goalFields(func(g *PhaseGoal) *Goal { return &g.Goal },
 	req("reference", choice{string(RefPeriastron), string(RefNode), string(RefConjunction)},
 		func(g *PhaseGoal) *string { return (*string)(&g.Reference) }, "point of the orbit that phases count from"),
@@ -212,6 +229,7 @@ var phaseTable = table{what: "a phase goal", fields: goalFields(func(g *PhaseGoa
 		"most units of a window in one horizon"),
 )}
 
+// windowTable: a window may pass phase 1, as 0.9 to 1.1 does.
 var windowTable = table{what: "a phase window", fields: []field{
 	req("from", number{lo: 0, hi: 1, below: true, unit: "cycles"}, func(w *PhaseWindow) *float64 { return &w.From },
 		"start of the window, cycles"),
@@ -221,6 +239,7 @@ var windowTable = table{what: "a phase window", fields: []field{
 		"different orbits wanted in the campaign"),
 }}
 
+// overlapTable: the scans of one overlap share a band of the goal.
 var overlapTable = table{what: "an overlap goal", fields: goalFields(func(g *OverlapGoal) *Goal { return &g.Goal },
 	opt("count", integer{lo: 2, hi: MaxTelescopes, unit: "telescopes", standard: DefaultOverlapCount},
 		func(g *OverlapGoal) *int { return &g.Count }, "telescopes at once"),
@@ -228,12 +247,15 @@ var overlapTable = table{what: "an overlap goal", fields: goalFields(func(g *Ove
 	req("every_d", days, func(g *OverlapGoal) *float64 { return &g.EveryD }, "wanted interval, d"),
 )}
 
+// pairTable: a receiver that has both bands serves a pair by one scan.
 var pairTable = table{what: "a band-pair goal", fields: goalFields(func(g *BandPairGoal) *Goal { return &g.Goal },
 	req("within_h", within(0, 1e5, "h"), func(g *BandPairGoal) *float64 { return &g.WithinH },
 		"most hours between the two starts, at most half of every_d"),
 	req("every_d", days, func(g *BandPairGoal) *float64 { return &g.EveryD }, "wanted interval, d"),
 )}
 
+// blockTable: blocks may lie outside the campaign's own dates, as time awarded
+// before or after it does.
 var blockTable = table{what: "a block", fields: []field{
 	req("id", text{}, func(b *Block) *string { return &b.ID }, "name, unique in the campaign"),
 	req("telescope", text{}, func(b *Block) *string { return &b.Telescope }, "code of the telescope"),
@@ -244,6 +266,8 @@ var blockTable = table{what: "a block", fields: []field{
 	opt("lost", spans{}, func(b *Block) *[]Span { return &b.Lost }, "parts that cannot be used"),
 }}
 
+// historyTable: what was observed need not fit the grid, a block or the scan
+// lengths of today; it need only name things that exist.
 var historyTable = table{what: "a history scan", fields: []field{
 	req("source", text{}, func(h *HistoryScan) *string { return &h.Source }, "name of the source"),
 	req("telescope", text{}, func(h *HistoryScan) *string { return &h.Telescope }, "code of the telescope"),
@@ -253,6 +277,7 @@ var historyTable = table{what: "a history scan", fields: []field{
 	req("counted", truth{}, func(h *HistoryScan) *bool { return &h.Counted }, "whether it is good enough to serve goals"),
 }}
 
+// pinTable: the length of a pin need not be one of the source's scan lengths.
 var pinTable = table{what: "a pin", fields: []field{
 	req("block", text{}, func(p *Pin) *string { return &p.Block }, "id of the block"),
 	req("source", text{}, func(p *Pin) *string { return &p.Source }, "name of the source"),

@@ -24,6 +24,8 @@ var planFile = table{what: "a plan file", lines: true, fields: []field{
 		"what anyone needs to recompute the bound"),
 }}
 
+// scanTable: references are not followed here; a plan is read without its
+// campaign.
 var scanTable = table{what: "a scan", fields: []field{
 	req("block", text{}, func(s *Scan) *string { return &s.Block }, "id of the block"),
 	req("telescope", text{}, func(s *Scan) *string { return &s.Telescope }, "code of the telescope"),
@@ -39,12 +41,15 @@ var scanTable = table{what: "a scan", fields: []field{
 	opt("earns", list[Earning]{&earningTable, 0, MaxScanEarns}, func(s *Scan) *[]Earning { return &s.Earns }, "what the scan earns"),
 }}
 
+// earningTable: for units that several scans earn together, each lists its
+// share.
 var earningTable = table{what: "an earning", fields: []field{
 	req("goal", text{}, func(e *Earning) *string { return &e.Goal }, "id of the goal"),
 	req("unit", text{}, func(e *Earning) *string { return &e.Unit }, "name of the unit: goal#k or goal@window"),
 	req("value", anyNumber, func(e *Earning) *float64 { return &e.Value }, "what the scan gets from the unit"),
 }}
 
+// unmetTable: reasons are for people, and other programs may leave them out.
 var unmetTable = table{what: "an unmet unit", fields: []field{
 	req("goal", text{}, func(u *Unmet) *string { return &u.Goal }, "id of the goal"),
 	req("unit", text{}, func(u *Unmet) *string { return &u.Unit }, "name of the unit"),
@@ -52,6 +57,8 @@ var unmetTable = table{what: "an unmet unit", fields: []field{
 	opt("reasons", reasons{}, func(u *Unmet) *[]Reason { return &u.Reasons }, "why it is unmet"),
 }}
 
+// reasonTable: text may hold line breaks; count is left out where nothing can
+// be counted.
 var reasonTable = table{what: "a reason", fields: []field{
 	opt("code", text{}, func(r *Reason) *string { return (*string)(&r.Code) }, "name of the cause"),
 	req("text", text{empty: true, most: MaxReasonChars, lines: true}, func(r *Reason) *string { return &r.Text },
@@ -59,6 +66,8 @@ var reasonTable = table{what: "a reason", fields: []field{
 	opt("count", integer{lo: 0, hi: 1 << 31}, func(r *Reason) *int { return &r.Count }, "candidate scans or blocks it applies to"),
 }}
 
+// certificateTable: prices of units that no plan can earn are refused by the
+// re-check, not here.
 var certificateTable = table{what: "a certificate", fields: []field{
 	req("prices", prices{}, func(c *Certificate) *map[string]float64 { return &c.Prices }, "price of a unit by its name; 0 where left out"),
 	req("bound", anyNumber, func(c *Certificate) *float64 { return &c.Bound }, "bound that follows from the prices"),

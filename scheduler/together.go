@@ -178,6 +178,8 @@ func (t *together) refers(at, thing, name string, known map[string]int, names fu
 	}
 }
 
+// cadence: a scan that counts earlier than half an interval could serve two
+// windows.
 func (t *together) cadence(at string, g *CadenceTarget) {
 	if g.EarlyD > g.EveryD/2 {
 		t.fault([]string{at + "/early_d", at + "/every_d"}, "early_d is %s; it must be at most half of every_d, %s d", short(g.EarlyD),
@@ -185,6 +187,7 @@ func (t *together) cadence(at string, g *CadenceTarget) {
 	}
 }
 
+// phase: a goal on phases needs an orbit, and windows of at most one turn.
 func (t *together) phase(at string, g *PhaseGoal) {
 	if i, ok := t.sourceAt[g.Source]; ok && t.c.Sources[i].Binary == nil {
 		t.fault([]string{at + "/source", place("sources", i, "binary")}, "source %s has no binary, so it has no orbital phase",
@@ -199,6 +202,7 @@ func (t *together) phase(at string, g *PhaseGoal) {
 	}
 }
 
+// overlap: more telescopes at once than may take part can never be.
 func (t *together) overlap(at string, g *OverlapGoal) {
 	n, whose := len(g.Telescopes), "telescopes that the goal names"
 	if n == 0 {
@@ -210,6 +214,8 @@ func (t *together) overlap(at string, g *OverlapGoal) {
 	}
 }
 
+// pair: two scans further apart than half an interval could belong to different
+// windows.
 func (t *together) pair(at string, g *BandPairGoal) {
 	if len(g.Bands) != 2 {
 		t.fault([]string{at + "/bands"}, "bands holds %d bands; a band pair has exactly two", len(g.Bands))
@@ -277,7 +283,7 @@ func (t *together) overlaps(of []int) {
 		if longest >= 0 && list[i].Start.Before(list[longest].End) {
 			later, earlier := max(i, longest), min(i, longest)
 			t.add(place("blocks", later, "start"), "the block, %s, overlaps block %s of the same telescope, %s",
-				spanText(list[later].Start, list[later].End), list[earlier].ID, spanText(list[earlier].Start, list[earlier].End))
+				spanText(list[later].Start, list[later].End), brief(list[earlier].ID), spanText(list[earlier].Start, list[earlier].End))
 		}
 		if longest < 0 || list[i].End.After(list[longest].End) {
 			longest = i
@@ -330,11 +336,11 @@ func (t *together) pins() {
 		b := &t.c.Blocks[j]
 		if !contains(b.Receivers, p.Receiver) {
 			t.fault([]string{at + "/receiver", place("blocks", j, "receivers")}, "receiver %s is not one of block %s, which has %s",
-				quote(p.Receiver), b.ID, strings.Join(b.Receivers, ", "))
+				quote(p.Receiver), brief(b.ID), few(b.Receivers))
 		}
 		if p.Start.Before(b.Start) || p.End().After(b.End) {
 			t.fault([]string{at + "/start", at + "/minutes", place("blocks", j, "start"), place("blocks", j, "end")},
-				"the pinned scan, %s, does not lie inside block %s, %s", spanText(p.Start, p.End()), b.ID, spanText(b.Start, b.End))
+				"the pinned scan, %s, does not lie inside block %s, %s", spanText(p.Start, p.End()), brief(b.ID), spanText(b.Start, b.End))
 		}
 	}
 }
@@ -354,9 +360,6 @@ func (t *together) pinGrid(at string, p *Pin) {
 			t.c.GridMin)
 	}
 }
-
-// instantText shows an instant inside a message.
-func instantText(t time.Time) string { return t.UTC().Format("2006-01-02T15:04:05.999Z") }
 
 // checkPlan reports what is wrong between the values of a plan file.
 func checkPlan(c *checker, p *Plan) {

@@ -34,6 +34,7 @@ func (w *writer) number(v float64) {
 	if v == 0 {
 		v = 0 // -0 is written as 0
 	}
+	// Very small and very large numbers are short only with an exponent.
 	format := byte('f')
 	if a := math.Abs(v); a != 0 && (a < 1e-6 || a >= 1e15) {
 		format = 'e'

@@ -7,7 +7,10 @@ import (
 	"reflect"
 	"strings"
 	"testing"
+	"unicode/utf16"
 	"unicode/utf8"
+
+	"pgregory.net/rapid"
 )
 
 // value reads any value into what encoding/json would make of it, numbers as
@@ -216,4 +219,162 @@ func FuzzLexer(f *testing.F) {
 			t.Fatalf("%q is JSON, but %v", text, x.Err())
 		}
 	})
+}
+
+// anyDocument writes a random value with random white space and escapes, the
+// way some program somewhere would.
+func anyDocument(t *rapid.T, depth int) string {
+	space := func() string { return rapid.StringMatching(`[ \t\r\n]{0,2}`).Draw(t, "space") }
+	text := func() string {
+		var b strings.Builder
+		b.WriteByte('"')
+		for _, r := range rapid.StringN(0, 6, -1).Draw(t, "text") {
+			switch {
+			case r == '"' || r == '\\':
+				b.WriteString(`\` + string(r))
+			case r < ' ' || rapid.Bool().Draw(t, "escape"):
+				for _, u := range utf16.Encode([]rune{r}) {
+					fmt.Fprintf(&b, `\u%04x`, u)
+				}
+			default:
+				b.WriteRune(r)
+			}
+		}
+		b.WriteByte('"')
+		return b.String()
+	}
+	kinds := 6
+	if depth == 0 {
+		kinds = 4
+	}
+	var s string
+	switch rapid.IntRange(0, kinds-1).Draw(t, "kind") {
+	case 0:
+		s = text()
+	case 1:
+		s = rapid.StringMatching(`-?(0|[1-9][0-9]{0,3})(\.[0-9]{1,3})?([eE][+-]?[0-9]{1,2})?`).Draw(t, "number")
+	case 2:
+		s = rapid.SampledFrom([]string{"true", "false"}).Draw(t, "truth")
+	case 3:
+		s = "null"
+	case 4:
+		var items []string
+		for range rapid.IntRange(0, 3).Draw(t, "items") {
+			items = append(items, anyDocument(t, depth-1))
+		}
+		s = "[" + space() + strings.Join(items, ",") + "]"
+	case 5:
+		var items []string
+		for range rapid.IntRange(0, 3).Draw(t, "members") {
+			items = append(items, space()+text()+space()+":"+anyDocument(t, depth-1))
+		}
+		s = "{" + space() + strings.Join(items, ",") + "}"
+	}
+	return space() + s + space()
+}
+
+// Any document is read as the standard library reads it, is skipped whole, and
+// is refused where a byte of it is missing at the end or one follows.
+func TestLexerReadsAnyDocument(t *testing.T) {
+	rapid.Check(t, func(t *rapid.T) {
+		document := anyDocument(t, 4)
+		x := New([]byte(document), 10)
+		got := value(x)
+		if !x.End() {
+			t.Fatalf("%q: %v", document, x.Err())
+		}
+		d := json.NewDecoder(strings.NewReader(document))
+		d.UseNumber()
+		var want any
+		if err := d.Decode(&want); err != nil || !reflect.DeepEqual(got, want) {
+			t.Fatalf("%q is read as %v, want %v, %v", document, got, want, err)
+		}
+		y := New([]byte(document), 10)
+		y.Skip()
+		if !y.End() {
+			t.Fatalf("%q cannot be skipped: %v", document, y.Err())
+		}
+		trimmed := strings.TrimRight(document, " \t\r\n")
+		last := trimmed[len(trimmed)-1]
+		if short := trimmed[:len(trimmed)-1]; last == '"' || last == ']' || last == '}' {
+			if z := New([]byte(short), 10); value(z) != nil && z.End() {
+				t.Fatalf("%q is accepted", short)
+			}
+		}
+		if z := New([]byte(trimmed+"]"), 10); value(z) != nil && z.End() {
+			t.Fatalf("%q is accepted", trimmed+"]")
+		}
+	})
+}
+
+// Reading does not change or keep what was read, but for texts without
+// escapes, which lie in the document.
+func TestTextLiesInTheDocument(t *testing.T) {
+	document := []byte(`["plain", "esc\u0061ped"]`)
+	x := New(document, 3)
+	x.BeginArray()
+	x.NextItem(true)
+	plain, _ := x.Text()
+	x.NextItem(false)
+	escaped, _ := x.Text()
+	if string(plain) != "plain" || string(escaped) != "escaped" {
+		t.Fatalf("%q, %q", plain, escaped)
+	}
+	if &plain[0] != &document[2] {
+		t.Error("a plain text was copied")
+	}
+	if n := testing.AllocsPerRun(50, func() {
+		y := New(document, 3)
+		y.BeginArray()
+		y.NextItem(true)
+		y.Text()
+	}); n > 1 {
+		t.Errorf("%v allocations to read a plain text", n)
+	}
+}
+
+// The nesting that is allowed is allowed, in objects and lists alike.
+func TestDepth(t *testing.T) {
+	for depth := 1; depth < 6; depth++ {
+		for _, pair := range [][2]string{{"[", "]"}, {`{"a":`, "}"}} {
+			document := strings.Repeat(pair[0], depth) + "1" + strings.Repeat(pair[1], depth)
+			for most := 1; most < 6; most++ {
+				x := New([]byte(document), most)
+				x.Skip()
+				if ok := x.End(); ok != (depth <= most) {
+					t.Errorf("%s with at most %d: accepted is %v", document, most, ok)
+				}
+			}
+		}
+	}
+	// Side by side is not deep.
+	x := New([]byte("["+strings.Repeat("[[]],", 50)+"[]]"), 3)
+	x.Skip()
+	if !x.End() {
+		t.Error(x.Err())
+	}
+}
+
+// A document of brackets alone is refused without a deep stack.
+func TestHostileNesting(t *testing.T) {
+	for _, text := range []string{strings.Repeat("[", 1<<20), strings.Repeat(`{"a":`, 1<<18),
+		strings.Repeat("[{\"\":", 1<<18)} {
+		x := New([]byte(text), 64)
+		x.Skip()
+		if x.End() || !strings.Contains(x.Err().Error(), "nested more than 64 deep") {
+			t.Errorf("%.20s…: %v", text, x.Err())
+		}
+	}
+}
+
+func BenchmarkSkip(b *testing.B) {
+	document := []byte("[" + strings.Repeat(`{"source": "SIM J0412+1833", "start": "2027-01-04T17:00:00Z", "minutes": 30.5, "counted": true},`, 1000) + "0]")
+	b.SetBytes(int64(len(document)))
+	for b.Loop() {
+		x := New(document, 10)
+		x.Skip()
+		if !x.End() {
+			b.Fatal(x.Err())
+		}
+	}
 }

@@ -86,32 +86,54 @@ func (g *goal) bandNames(bits uint32) []string {
 
 // addGoals derives the units of all goals.
 func (m *model) addGoals() error {
-	c := m.campaign
-	for i := range c.CadenceTargets {
-		t := &c.CadenceTargets[i]
-		m.addDue(&goal{Goal: t.Goal, kind: scheduler.KindCadence, every: lengthOf(t.EveryD, day), early: lengthOf(t.EarlyD, day), toaUs: t.TOAUs})
+	for _, g := range m.dueGoals(scheduler.KindCadence) {
+		if err := m.addDue(g); err != nil {
+			return err
+		}
 	}
 	orbits, err := m.newOrbits()
 	if err != nil {
 		return err
 	}
-	for i := range c.PhaseGoals {
-		p := &c.PhaseGoals[i]
-		if err := m.addPhase(&goal{Goal: p.Goal, kind: scheduler.KindPhase, phase: p, dwell: lengthOf(p.DwellMin, minute)}, orbits); err != nil {
+	for i := range m.campaign.PhaseGoals {
+		p := &m.campaign.PhaseGoals[i]
+		g := &goal{Goal: p.Goal, kind: scheduler.KindPhase, phase: p, dwell: lengthOf(p.DwellMin, minute)}
+		if err := m.addPhase(g, orbits); err != nil {
 			return err
 		}
 	}
-	for i := range c.OverlapGoals {
-		o := &c.OverlapGoals[i]
-		m.addDue(&goal{Goal: o.Goal, kind: scheduler.KindOverlap, every: lengthOf(o.EveryD, day), early: lengthOf(o.EveryD/4, day),
-			count: o.Count, overlap: lengthOf(o.OverlapMin, minute)})
-	}
-	for i := range c.BandPairGoals {
-		p := &c.BandPairGoals[i]
-		m.addDue(&goal{Goal: p.Goal, kind: scheduler.KindBandPair, every: lengthOf(p.EveryD, day), early: lengthOf(p.EveryD/4, day),
-			within: lengthOf(p.WithinH, hour)})
+	for _, g := range append(m.dueGoals(scheduler.KindOverlap), m.dueGoals(scheduler.KindBandPair)...) {
+		if err := m.addDue(g); err != nil {
+			return err
+		}
 	}
 	return nil
+}
+
+// dueGoals are the goals of one kind that has due windows.
+func (m *model) dueGoals(kind scheduler.GoalKind) []*goal {
+	var list []*goal
+	c := m.campaign
+	c.EachGoal(func(k scheduler.GoalKind, i int, base *scheduler.Goal) {
+		if k != kind {
+			return
+		}
+		g := &goal{Goal: *base, kind: kind}
+		switch kind {
+		case scheduler.KindCadence:
+			t := &c.CadenceTargets[i]
+			g.every, g.early, g.toaUs = lengthOf(t.EveryD, day), lengthOf(t.EarlyD, day), t.TOAUs
+		case scheduler.KindOverlap:
+			o := &c.OverlapGoals[i]
+			g.every, g.early = lengthOf(o.EveryD, day), lengthOf(o.EveryD/4, day)
+			g.count, g.overlap = o.Count, lengthOf(o.OverlapMin, minute)
+		case scheduler.KindBandPair:
+			p := &c.BandPairGoals[i]
+			g.every, g.early, g.within = lengthOf(p.EveryD, day), lengthOf(p.EveryD/4, day), lengthOf(p.WithinH, hour)
+		}
+		list = append(list, g)
+	})
+	return list
 }
 
 // addGroup puts a group with its goal, its source and the model.
@@ -129,9 +151,8 @@ func (m *model) addGroup(g *group) {
 }
 
 // addDue derives the due windows of a goal (section 5).
-func (m *model) addDue(g *goal) {
+func (m *model) addDue(g *goal) error {
 	g.source = m.sources[g.Source]
-	m.goals = append(m.goals, g)
 	due, urgency := m.from, 3.0
 	if last, ok := g.lastSatisfied(); ok {
 		next := last + g.every
@@ -141,12 +162,17 @@ func (m *model) addDue(g *goal) {
 		}
 	}
 	gr := &group{goal: g}
-	for k := 1; due < m.to && len(m.units)+k <= scheduler.MaxPlanUnits+1; k++ { // newModel refuses more
+	for k := 1; due < m.to; k++ {
+		if len(m.units)+k > scheduler.MaxPlanUnits {
+			return scheduler.Errorf(scheduler.ErrTooLarge, "the horizon from %s to %s holds more than %d units",
+				at(m.from), at(m.to), scheduler.MaxPlanUnits)
+		}
 		gr.units = append(gr.units, &unit{name: fmt.Sprintf("%s#%d", g.ID, k), weight: g.Priority * urgency,
 			value: g.Priority * urgency, times: 1, load: g.loadOfUnit(), due: due})
-		due, urgency = due+max(g.every, 1), 1
+		due, urgency = due+g.every, 1
 	}
 	m.addGroup(gr)
+	return nil
 }
 
 // loadOfUnit is how many scans share one due window of the goal.

@@ -23,7 +23,6 @@ type model struct {
 	blockByID  map[string]*block
 	pins       []*pin // in those blocks
 
-	goals  []*goal
 	groups []*group
 	units  []*unit
 	byName map[string]*unit
@@ -97,10 +96,6 @@ func newModel(c *scheduler.Campaign, h scheduler.Horizon) (*model, error) {
 	m.addPins()
 	if err := m.addGoals(); err != nil {
 		return nil, err
-	}
-	if len(m.units) > scheduler.MaxPlanUnits {
-		return nil, scheduler.Errorf(scheduler.ErrTooLarge, "the horizon from %s to %s holds more than %d units",
-			at(m.from), at(m.to), scheduler.MaxPlanUnits)
 	}
 	return m, nil
 }

@@ -84,7 +84,6 @@ func elements(b *scheduler.Binary) (orbit.Elements, error) {
 // window that is still wanted.
 func (m *model) addPhase(g *goal, o *orbits) error {
 	g.source = m.sources[g.Source]
-	m.goals = append(m.goals, g)
 	var counts []*made
 	from := m.from
 	for _, h := range g.source.history {

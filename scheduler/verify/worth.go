@@ -124,23 +124,21 @@ func (a *appraiser) take(start int64, value, load float64, u *unit) {
 	a.option[i] = max(a.option[i], value-load*a.prices[u.index])
 }
 
-// inTime calls f for the starts at which a unit's timeliness is not 0.
-func (a *appraiser) inTime(u *unit, starts runs, f func(start int64, v float64)) {
-	lo, hi := ceilDiv(u.due-u.goal.early, a.field.grid), ceilDiv(u.due+u.goal.every, a.field.grid)-1
-	for _, s := range starts {
-		for at := max(s.lo, lo); at <= min(s.hi, hi); at++ {
-			f(at, u.timeliness(msec(at)*a.field.grid))
-		}
-	}
+// inTime are the starts from which, up to some steps later, the unit's
+// timeliness is not 0.
+func (u *unit) inTime(starts runs, later int64, grid msec) runs {
+	return starts.within(ceilDiv(u.due-u.goal.early, grid)-later, ceilDiv(u.due+u.goal.every, grid)-1)
 }
 
 func (a *appraiser) offerCadence(g *group, length int64, starts runs) {
 	for _, u := range g.units {
-		a.inTime(u, starts, func(at int64, v float64) {
-			i := at - a.field.first
-			q := quality(a.info[i+length]-a.info[i], g.goal.toaUs)
-			a.take(at, u.weight*v*q, 1, u)
-		})
+		for _, s := range u.inTime(starts, 0, a.field.grid) {
+			for at := s.lo; at <= s.hi; at++ {
+				i := at - a.field.first
+				q := quality(a.info[i+length]-a.info[i], g.goal.toaUs)
+				a.take(at, u.weight*u.timeliness(msec(at)*a.field.grid)*q, 1, u)
+			}
+		}
 	}
 }
 
@@ -167,7 +165,7 @@ func (a *appraiser) offerPhase(u *unit, length int64, starts runs) {
 // time could run: the one next to when it is due, on either side.
 func (a *appraiser) offerOverlap(g *group, spare int64, starts, common runs) {
 	for _, u := range g.units {
-		for _, s := range starts {
+		for _, s := range u.inTime(starts, spare, a.field.grid) {
 			for at := s.lo; at <= s.hi; at++ {
 				if v := u.bestIn(common, at, at+spare, a.field.grid); v > 0 {
 					a.take(at, u.weight*v/float64(g.goal.count), 1, u)
@@ -184,7 +182,7 @@ func (a *appraiser) offerPair(g *group, bands uint32, starts runs) {
 	reach := floorDiv(g.goal.within, grid)
 	other := a.partners.otherStarts(g.goal, bands, starts[0].lo-reach, starts[len(starts)-1].hi+reach)
 	for _, u := range g.units {
-		for _, s := range starts {
+		for _, s := range u.inTime(starts, reach, grid) {
 			for at := s.lo; at <= s.hi; at++ {
 				own := u.timeliness(msec(at) * grid)
 				v := u.bestIn(other, at, at+reach, grid)

@@ -54,6 +54,7 @@ func check(ctx context.Context, std stdio, campaignPath, planPath string, asJSON
 	if err != nil {
 		return err
 	}
+	// All cores: the report does not depend on how many.
 	report, err := verify.Check(c, p, verify.Options{SkipBound: skipBound, Workers: runtime.GOMAXPROCS(0),
 		Stop: func() bool { return ctx.Err() != nil }})
 	if errors.Is(err, verify.ErrStopped) {
@@ -103,6 +104,7 @@ func reportText(r *verify.Report, skipBound bool) string {
 	}
 	list(r.Violations, "")
 	list(r.Notes, "note: ")
+	// The last line is for programs too: words and numbers in a fixed order.
 	earned, total := 0, len(r.Units)
 	for _, times := range r.Units {
 		if times > 0 {
@@ -117,7 +119,8 @@ func reportText(r *verify.Report, skipBound bool) string {
 	return b.String()
 }
 
-// violationJSON is one broken rule as it is written.
+// violationJSON is one broken rule as it is written; what it has nothing to
+// say about is left out.
 type violationJSON struct {
 	Rule    string   `json:"rule"`
 	Text    string   `json:"text"`

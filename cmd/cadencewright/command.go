@@ -87,8 +87,8 @@ func run(ctx context.Context, args []string, stdin io.Reader, stdout, stderr io.
 
 // run parses the command's flags and runs it.
 func (c *command) run(ctx context.Context, std stdio, args []string) int {
-	flags := flag.NewFlagSet(c.name, flag.ContinueOnError)
-	flags.SetOutput(io.Discard) // errors and help are written below
+	flags := flag.NewFlagSet(c.name, flag.ContinueOnError) // a fresh one: commands keep no state
+	flags.SetOutput(io.Discard)                            // errors and help are written below
 	act := c.setup(flags)
 	positional, err := parseMixed(flags, args)
 	if errors.Is(err, flag.ErrHelp) {
@@ -102,7 +102,9 @@ func (c *command) run(ctx context.Context, std stdio, args []string) int {
 	return c.report(std, err)
 }
 
-// report writes a command's error, if any, and gives the exit code.
+// report writes a command's error, if any, and gives the exit code. Wrong
+// usage is met with the usage line; wrong input and failures with their cause
+// alone.
 func (c *command) report(std stdio, err error) int {
 	var usage usageError
 	var input inputError

@@ -22,22 +22,32 @@ func readInput(std stdio, path string) ([]byte, error) {
 		return nil, inputError{plainPathError("reading", err)}
 	}
 	defer f.Close()
-	if info, err := f.Stat(); err == nil && info.IsDir() {
+	info, err := f.Stat()
+	switch {
+	case err == nil && info.IsDir():
 		return nil, inputError{fmt.Errorf("reading %s: it is a folder, not a file", path)}
+	case err == nil && info.Size() > scheduler.MaxFileBytes:
+		return nil, tooLarge(path)
 	}
 	return readLimited(f, path)
+}
+
+// tooLarge is the error for a file beyond the limit.
+func tooLarge(name string) error {
+	return inputError{fmt.Errorf("%s is larger than %d MiB; campaign and plan files are far smaller, so this is probably another kind of file",
+		name, scheduler.MaxFileBytes>>20)}
 }
 
 // readLimited reads all of r, unless that is too much.
 func readLimited(r io.Reader, name string) ([]byte, error) {
 	const limit = scheduler.MaxFileBytes
+	// One byte more than allowed tells a file that fits from one that does not.
 	data, err := io.ReadAll(io.LimitReader(r, limit+1))
 	if err != nil {
 		return nil, inputError{fmt.Errorf("reading %s: %w", name, err)}
 	}
 	if len(data) > limit {
-		return nil, inputError{fmt.Errorf("%s is larger than %d MiB; campaign and plan files are far smaller, so this is probably another kind of file",
-			name, limit>>20)}
+		return nil, tooLarge(name)
 	}
 	return data, nil
 }
@@ -146,6 +156,7 @@ func (o *output) commit(data []byte) error {
 			err = closeErr
 		}
 	}
+	// On one file system a rename is all or nothing.
 	if err == nil && o.final != "" {
 		err = os.Rename(o.temp.Name(), o.final)
 	}

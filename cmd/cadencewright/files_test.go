@@ -2,10 +2,13 @@ package main
 
 import (
 	"bytes"
+	"io"
 	"os"
 	"path/filepath"
 	"strings"
 	"testing"
+
+	"cadencewright/scheduler"
 )
 
 func TestOutputAppearsWholeOrNotAtAll(t *testing.T) {
@@ -137,6 +140,22 @@ func TestReadInput(t *testing.T) {
 			t.Errorf("%s: got %v, want %q", path, err, want)
 		}
 	}
+}
+
+// TestTooMuchThroughAPipe has no size to look at before reading.
+func TestTooMuchThroughAPipe(t *testing.T) {
+	std := stdio{in: io.LimitReader(zeros{}, scheduler.MaxFileBytes+1)}
+	if _, err := readInput(std, "-"); err == nil || !strings.Contains(err.Error(), "standard input is larger than 64 MiB") {
+		t.Errorf("got %v", err)
+	}
+}
+
+// zeros never ends.
+type zeros struct{}
+
+func (zeros) Read(p []byte) (int, error) {
+	clear(p)
+	return len(p), nil
 }
 
 // onlyFile fails unless the folder holds the one file.

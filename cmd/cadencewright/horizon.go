@@ -8,7 +8,8 @@ import (
 	"cadencewright/scheduler"
 )
 
-// horizonFlags name the stretch of time to plan.
+// horizonFlags name the stretch of time to plan: an ISO week, or any other
+// from a start to an end.
 type horizonFlags struct{ week, from, to string }
 
 func (h *horizonFlags) declare(flags *flag.FlagSet) {

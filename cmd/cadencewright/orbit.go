@@ -42,19 +42,22 @@ anomaly from the named point; good to 0.03 s and the elements' own accuracy.`,
 	},
 }
 
-// orbitQuestion is what was asked, as it stood on the command line.
+// orbitQuestion is what was asked, as it stood on the command line. The
+// source comes from a campaign file, by its name, or from place and elements.
 type orbitQuestion struct {
-	flags      *flag.FlagSet
-	source     string
+	flags      *flag.FlagSet // to tell flags left out from flags set to 0
+	source     string        // empty: all binaries of the campaign
 	place      placeFlags
 	elements   elementFlags
-	span       spanFlags
+	span       spanFlags // of no length: the state at its start and what comes next
 	step       string
-	next       int
-	eventsOnly bool
+	next       int  // coming events of each kind, where the span has no length
+	eventsOnly bool // no phases
 	format     string
 }
 
+// answer checks all flags before it reads a file, then asks the almanac about
+// each source in turn.
 func (q *orbitQuestion) answer(_ context.Context, std stdio, args []string) error {
 	if err := oneOf("format", q.format, formTable, formCSV, formJSON); err != nil {
 		return err
@@ -93,7 +96,7 @@ func askOrbit(src *scheduler.Source, goals []scheduler.PhaseGoal, from, to time.
 	if err != nil {
 		return a, err
 	}
-	if from.Equal(to) {
+	if from.Equal(to) { // neither --for nor --to was given
 		s, err := o.At(from)
 		if err != nil {
 			return a, err
@@ -108,6 +111,7 @@ func askOrbit(src *scheduler.Source, goals []scheduler.PhaseGoal, from, to time.
 	if a.events, err = o.Events(from, to); err != nil {
 		return a, err
 	}
+	// What the campaign wants of the orbit, where it can be had.
 	for i := range goals {
 		if goals[i].Source != src.Name {
 			continue
@@ -165,6 +169,7 @@ type elementFlags struct {
 	pbD, a1Ls, ecc, omDeg, t0, omdot, pbdot, tasc, eps1, eps2, m2, sini float64
 }
 
+// declare names the flags after the keys of a campaign file's "binary".
 func (e *elementFlags) declare(flags *flag.FlagSet) {
 	for _, f := range []struct {
 		to          *float64
@@ -189,6 +194,8 @@ func (e *elementFlags) declare(flags *flag.FlagSet) {
 
 // binary checks the flags and makes an orbit of them.
 func (e *elementFlags) binary(flags *flag.FlagSet) (*scheduler.Binary, error) {
+	// An epoch or an eccentricity of 0 is a value, so what counts is whether
+	// the flag was given.
 	set := map[string]bool{}
 	flags.Visit(func(f *flag.Flag) { set[f.Name] = true })
 	if !set["pb"] {

@@ -25,6 +25,8 @@ type orbitOf struct {
 	passages []almanac.GoalPassage
 }
 
+// write writes the answer in one of the three forms; the table of several
+// binaries at one instant is a line each.
 func (a *orbitAnswer) write(w io.Writer, format string) error {
 	switch {
 	case format == formJSON:
@@ -67,6 +69,8 @@ func (a *orbitAnswer) overview(b *strings.Builder) error {
 	return t.writeAligned(b)
 }
 
+// phase writes cycles for people: a ten-thousandth is 0.7 s of a two-hour
+// orbit.
 func phase(cycles float64) string { return fmt.Sprintf("%.4f", cycles) }
 
 // first is the first coming passage of a point, for people.
@@ -87,6 +91,7 @@ func (a *orbitAnswer) describe(b *strings.Builder, o *orbitOf) error {
 		fmt.Fprintf(b, ", eccentricity %g", p.Ecc)
 	}
 	b.WriteString("\n")
+	// One instant in sentences, several as a table.
 	if len(o.states) == 1 && !a.eventsOnly {
 		s := o.states[0]
 		fmt.Fprintf(b, "at %s UTC (barycentric TDB is %+.3f s from it)\n", s.At.Format("2006-01-02 15:04:05"), s.BarycentricS)
@@ -167,7 +172,8 @@ func (a *orbitAnswer) eventRows() *rows {
 	return r
 }
 
-// json is the whole answer as plain values.
+// json is the whole answer as plain values; lists are never null. Digits end
+// where the Roemer delay's 0.03 s or the orbit's own numbers do.
 func (a *orbitAnswer) json() any {
 	type object = map[string]any
 	at := func(t time.Time) string { return t.Round(time.Millisecond).Format(milliLayout) }

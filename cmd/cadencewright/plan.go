@@ -46,9 +46,9 @@ the search and keeps the best plan found so far; a second one ends the program.`
 // planQuestion is what was asked, as it stood on the command line.
 type planQuestion struct {
 	horizon horizonFlags
-	out     string
-	effort  int64
-	seconds float64
+	out     string  // a file, or - for standard output
+	effort  int64   // thousands of steps; 0: the solver's own, or none where seconds are given
+	seconds float64 // 0: no limit of time
 	seed    uint64
 	workers int
 	quiet   bool
@@ -70,7 +70,8 @@ func (q *planQuestion) check() error {
 	return nil
 }
 
-// run makes the plan and writes it.
+// run makes the plan and writes it. Nothing appears under the file's name
+// before the plan has been made and re-checked.
 func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error {
 	if err := exactly(args, "CAMPAIGN.json"); err != nil {
 		return err
@@ -115,6 +116,7 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 
 // solve searches until the effort or the time is spent or the context ends.
 func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campaign, h scheduler.Horizon) (*feasible.Problem, *solve.Result, error) {
+	// Time runs from here: reading the sky is part of it.
 	if q.seconds > 0 {
 		var cancel context.CancelFunc
 		ctx, cancel = context.WithTimeout(ctx, time.Duration(q.seconds*float64(time.Second)))
@@ -129,6 +131,7 @@ func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campai
 		line = newProgressLine(std.err)
 	}
 	defer line.clear()
+	// A limit of time alone means: search until then.
 	effort := q.effort
 	if effort == 0 && q.seconds > 0 {
 		effort = endlessEffort

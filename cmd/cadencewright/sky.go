@@ -41,7 +41,8 @@ compared, without tracks. Times are UTC; edges are good to half a second.`,
 	},
 }
 
-// skyQuestion is what was asked, as it stood on the command line.
+// skyQuestion is what was asked, as it stood on the command line. Source and
+// telescope come from a campaign file, by their names, or from coordinates.
 type skyQuestion struct {
 	source, telescope            string
 	place                        placeFlags
@@ -52,6 +53,9 @@ type skyQuestion struct {
 	upOnly                       bool
 }
 
+// answer checks all flags before it reads a file, then asks the almanac about
+// each telescope in turn. Tracks are for one telescope: several would be a
+// long list that nobody reads.
 func (q *skyQuestion) answer(_ context.Context, std stdio, args []string) error {
 	if err := oneOf("format", q.format, formTable, formCSV, formJSON); err != nil {
 		return err
@@ -125,6 +129,7 @@ func (q *skyQuestion) byCoordinates() (*scheduler.Source, *scheduler.Telescope, 
 	if q.lon == "" || q.lat == "" {
 		return nil, nil, usagef("name a campaign file, or give the site by --lon and --lat")
 	}
+	// No range of the mount: whoever gives coordinates asks about the sky.
 	tel := &scheduler.Telescope{Code: "site", Name: "the site given", HeightM: q.heightM, Mount: scheduler.MountAltAz,
 		ElevationMinDeg: q.minElDeg, ElevationMaxDeg: 90, SunMinDeg: q.sunMinDeg, AzimuthRangeDeg: [2]float64{-360, 720}}
 	if tel.LongitudeDeg, err = parseAngle("lon", q.lon, false, -180, 360); err != nil {

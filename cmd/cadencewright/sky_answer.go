@@ -26,12 +26,16 @@ type skySite struct {
 	track     []almanac.Sample
 }
 
+// How instants are written: for people to the minute, UTC said in words; for
+// programs as RFC 3339.
 const (
 	minuteLayout = "2006-01-02 15:04"
 	secondLayout = "2006-01-02T15:04:05Z"
 	milliLayout  = "2006-01-02T15:04:05.000Z"
 )
 
+// write writes the answer in one of the three forms. The table is put together
+// first, so that an error leaves no half of it.
 func (a *skyAnswer) write(w io.Writer, format string) error {
 	switch format {
 	case formCSV:
@@ -56,6 +60,7 @@ func (s *skySite) describe(b *strings.Builder) error {
 	t := s.telescope
 	fmt.Fprintf(b, "\n%s, %s: longitude %.4f E, latitude %.4f, elevation %g to %g deg\n", t.Code, t.Name, t.LongitudeDeg, t.LatitudeDeg,
 		t.ElevationMinDeg, t.ElevationMaxDeg)
+	// Local time only where the telescope has a zone.
 	up := rows{columns: []string{"up from (UTC)", "to (UTC)", "local", "LST", "highest"}}
 	if s.zone() == nil {
 		up.columns = []string{"up from (UTC)", "to (UTC)", "LST", "highest"}
@@ -162,7 +167,8 @@ func (a *skyAnswer) csvRows() *rows {
 	return r
 }
 
-// json is the whole answer as plain values.
+// json is the whole answer as plain values: lists are never null, angles have
+// no more digits than they are good for, hours are decimal.
 func (a *skyAnswer) json() any {
 	type object = map[string]any
 	var sites []object

@@ -37,6 +37,7 @@ func parseInstant(flagName, text string, now time.Time) (time.Time, error) {
 // parseSpan reads the duration of a flag: "90m", "36h" or "7d".
 func parseSpan(flagName, text string) (time.Duration, error) {
 	d, err := time.ParseDuration(text)
+	// Go's own durations end with hours.
 	if days, ok := strings.CutSuffix(text, "d"); ok && err != nil {
 		var n float64
 		if n, err = strconv.ParseFloat(days, 64); err == nil && math.Abs(n) < 1e5 {
@@ -54,6 +55,7 @@ func parseSpan(flagName, text string) (time.Duration, error) {
 func parseAngle(flagName, text string, hours bool, least, most float64) (float64, error) {
 	bad := usagef("--%s %q is no angle; write degrees (63.0625) or %s", flagName, text, map[bool]string{
 		true: "hours:minutes:seconds (04:12:15)", false: "degrees:minutes:seconds (-30:43:12)"}[hours])
+	// The sign belongs to the whole: -00:30 is half a degree south.
 	sign, body := 1.0, text
 	if rest, negative := strings.CutPrefix(body, "-"); negative {
 		sign, body = -1, rest

@@ -46,9 +46,9 @@ func TestCandidatesAgainstListing(t *testing.T) {
 		{"not detectable in one band", func(c *scheduler.Campaign) { c.Sources[4].Scatter1GHzS = 0.03 }},
 		{"short windows", func(c *scheduler.Campaign) {
 			for i := range c.CadenceTargets {
-				c.CadenceTargets[i].EveryD, c.CadenceTargets[i].EarlyD = 0.05, 0.02
+				c.CadenceTargets[i].EveryD, c.CadenceTargets[i].EarlyD = 0.5, 0.2
 			}
-			c.OverlapGoals[0].EveryD, c.BandPairGoals[0].EveryD, c.BandPairGoals[0].WithinH = 0.1, 0.07, 0.8
+			c.OverlapGoals[0].EveryD, c.BandPairGoals[0].EveryD, c.BandPairGoals[0].WithinH = 0.6, 0.3, 2
 		}},
 	} {
 		t.Run(x.name, func(t *testing.T) {

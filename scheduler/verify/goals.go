@@ -161,12 +161,12 @@ func (m *model) addDue(g *goal) error {
 			urgency += min(2, float64(m.from-next)/float64(g.every))
 		}
 	}
+	if windows := (m.to - due) / g.every; windows > msec(scheduler.MaxPlanUnits-len(m.units)) {
+		return scheduler.Errorf(scheduler.ErrTooLarge, "the horizon from %s to %s holds more than %d units",
+			at(m.from), at(m.to), scheduler.MaxPlanUnits)
+	}
 	gr := &group{goal: g}
 	for k := 1; due < m.to; k++ {
-		if len(m.units)+k > scheduler.MaxPlanUnits {
-			return scheduler.Errorf(scheduler.ErrTooLarge, "the horizon from %s to %s holds more than %d units",
-				at(m.from), at(m.to), scheduler.MaxPlanUnits)
-		}
 		gr.units = append(gr.units, &unit{name: fmt.Sprintf("%s#%d", g.ID, k), weight: g.Priority * urgency,
 			value: g.Priority * urgency, times: 1, load: g.loadOfUnit(), due: due})
 		due, urgency = due+g.every, 1

@@ -24,17 +24,17 @@ func TestErrorf(t *testing.T) {
 
 func TestKindOf(t *testing.T) {
 	for _, k := range kinds {
-		if got := KindOf(fmt.Errorf("saving: %w", Errorf(k, "x"))); got != k {
+		if got := KindOf(fmt.Errorf("saving: %w", Errorf(k, "x"))); !errors.Is(got, k) {
 			t.Errorf("the kind of a wrapped %q is %v", k, got)
 		}
-		if KindOf(k) != k {
+		if !errors.Is(KindOf(k), k) {
 			t.Errorf("the kind of %q itself is %v", k, KindOf(k))
 		}
 	}
 	if KindOf(errors.New("x")) != nil || KindOf(nil) != nil {
 		t.Error("an error of no kind has one")
 	}
-	if KindOf(Problems{{"/a", "b"}}) != ErrInvalid {
+	if !errors.Is(KindOf(Problems{{"/a", "b"}}), ErrInvalid) {
 		t.Error("problems are invalid input")
 	}
 }

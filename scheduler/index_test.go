@@ -1,6 +1,7 @@
 package scheduler
 
 import (
+	"errors"
 	"fmt"
 	"testing"
 	"time"
@@ -97,7 +98,7 @@ func TestEndsAndZones(t *testing.T) {
 		t.Errorf("midnight UTC is %d h at TRA", got)
 	}
 	tel := Telescope{Timezone: "Mars/Olympus"}
-	if _, err := tel.Location(); err == nil || KindOf(err) != ErrInvalid {
+	if _, err := tel.Location(); err == nil || !errors.Is(KindOf(err), ErrInvalid) {
 		t.Errorf("a zone that does not exist: %v", err)
 	}
 }

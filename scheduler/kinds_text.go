@@ -50,7 +50,7 @@ func (k text) check(c *checker, from any) {
 
 // isControl reports a character that has no place in a name: it would show as
 // nothing, or break a line of a table.
-func (k text) isControl(r rune) bool { return unicode.IsControl(r) && !(k.lines && r == '\n') }
+func (k text) isControl(r rune) bool { return unicode.IsControl(r) && (!k.lines || r != '\n') }
 
 func (k text) isDefault(from any) bool { return *from.(*string) == "" }
 

@@ -118,7 +118,7 @@ func TestReadCampaignTellsAllAtOnce(t *testing.T) {
 	if got := pointers(problemsOf(t, err)); !reflect.DeepEqual(got, want) {
 		t.Errorf("problems at\n %v, want\n %v\n%v", got, want, err)
 	}
-	if !errors.Is(err, ErrInvalid) || KindOf(err) != ErrInvalid {
+	if !errors.Is(err, ErrInvalid) || !errors.Is(KindOf(err), ErrInvalid) {
 		t.Error("problems are not of the kind invalid")
 	}
 }

@@ -45,7 +45,7 @@ const (
 // masses (general relativity at first order: Damour & Deruelle 1986, from
 // memory), so that the orbit is one that could be.
 func (k orbitKind) make(r *random, monday time.Time) *scheduler.Binary {
-	m1 := r.between(1.3, 1.7)
+	m1 := r.between(1.3, 1.7) // the pulsar
 	m2 := k.m2Msun * r.between(0.97, 1.03)
 	pb := k.pbD * r.between(0.985, 1.015)
 	n := 2 * math.Pi / (pb * dayS)
@@ -57,6 +57,7 @@ func (k orbitKind) make(r *random, monday time.Time) *scheduler.Binary {
 	if k.publish {
 		b.M2Msun, b.Sini = round(m2, 3), k.sini
 	}
+	// An ephemeris some years old, as most are.
 	epoch := mjd(monday) - r.between(400, 3000)
 	if !k.kepler {
 		om := r.between(0, 2*math.Pi)

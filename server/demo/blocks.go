@@ -28,7 +28,7 @@ var timetable = []award{
 	{kvitvarden, 0, 17.5, 5, []string{"L1", "S1"}, "joint with WKR"},
 	{kvitvarden, 4, 19, 4, []string{"L1"}, "joint with WKR"},
 	{kvitvarden, 5, 8, 4, []string{"L1", "S1"}, reserve},
-	{kestrel, 0, 13.5, 5, []string{"L1", "P1"}, "joint with WKR"},
+	{kestrel, 0, 11, 6, []string{"L1", "P1"}, "joint with WKR"},
 	{kestrel, 3, 21.5, 4, []string{"L1", "P1"}, ""},
 	{quandong, 1, 16, 4.5, []string{"U1", "L1"}, "joint with SBP"},
 	{quandong, 3, 22, 3.5, []string{"U1", "L1"}, ""},
@@ -46,7 +46,7 @@ const (
 	maintenanceWeek = -4 // WKR is painted
 	receiverOut     = -7 // W1 of SBP is away for repair, two weeks
 	snowWeek        = -2 // KVV is snowed in
-	stormWeek       = -1 // WKR is parked from Wednesday on, KES has a broken drive
+	stormWeek       = -1 // WKR parked from Wednesday on, KES a broken drive, SBP short of staff
 	trackWorkWeek   = 1  // WKR's azimuth track is ground: a lost part
 	fullWeek        = 2  // KES closed, SBP has one block: far too little time
 )
@@ -83,15 +83,15 @@ func weekBlocks(c *scheduler.Campaign, seed uint64, monday time.Time, week int) 
 
 // given reports whether the award is given in a week.
 func given(a award, week int) bool {
-	switch {
-	case week == fullWeek:
+	switch week {
+	case fullWeek:
 		return a.telescope != kestrel && (a.telescope != saltbush || a.day == 1) && a.label != reserve
-	case week == maintenanceWeek:
+	case maintenanceWeek:
 		return a.telescope != wolkenried
-	case week == snowWeek:
+	case snowWeek:
 		return a.telescope != kvitvarden
-	case week == stormWeek:
-		return a.telescope != kestrel && (a.telescope != wolkenried || a.day < 2)
+	case stormWeek:
+		return a.telescope != kestrel && (a.telescope != wolkenried || a.day < 2) && (a.telescope != saltbush || a.day > 1)
 	}
 	return a.label != reserve || week%3 == 0
 }

@@ -140,6 +140,7 @@ func (m *goalMaker) phase(s *scheduler.Source, ref scheduler.PhaseReference, win
 		shortest = math.Min(shortest, (w[1]-w[0])*s.Binary.PbD*1440)
 	}
 	g.DwellMin = math.Max(5, math.Min(30, 5*math.Floor(shortest*0.8/5)))
+	// Orbits that come round several times a week may be covered twice in one.
 	if s.Binary.PbD < 1 {
 		g.PerHorizon = 2
 	}
@@ -154,6 +155,8 @@ func (m *goalMaker) overlaps() {
 		{quandong, saltbush}, {quandong, saltbush}, {quandong, saltbush}, {quandong, saltbush},
 		{wolkenried, kestrel}, {wolkenried, kestrel}, {wolkenried, kvitvarden, kestrel},
 	}
+	// Each goal takes the next source that all its telescopes see, and no source
+	// is taken twice.
 	order := m.r.shuffled(len(m.c.Sources))
 	for _, group := range groups[:overlapCount] {
 		for n, i := range order {
@@ -177,6 +180,7 @@ func (m *goalMaker) overlaps() {
 // pairs adds goals of two bands near in time: the interstellar medium changes
 // from week to week.
 func (m *goalMaker) pairs() {
+	// A pair is chosen for a telescope that can complete it, but any may.
 	choices := []struct{ one, two, at string }{
 		{"L", "S", wolkenried}, {"U", "L", saltbush}, {"P", "L", kestrel}, {"L", "S", kvitvarden}, {"U", "L", quandong},
 		{"U", "S", saltbush}, {"U", "S", wolkenried},

@@ -86,7 +86,7 @@ func (p *past) week(seed uint64, monday time.Time, week int) {
 
 // spoil lets wind or a fault end a block early, or eat it whole.
 func (p *past) spoil(b *scheduler.Block) {
-	odds := 0.08
+	odds := 0.1
 	if b.Telescope == kvitvarden {
 		odds = 0.16 // a windy place
 	}
@@ -105,6 +105,7 @@ func (p *past) agree(tables []*upTable, g *scheduler.OverlapGoal) {
 			minutes = m
 		}
 	}
+	// People do not get round to agreeing every week.
 	if minutes == 0 || !p.r.chance(0.6) {
 		return
 	}
@@ -196,7 +197,7 @@ func (p *past) fill(u *upTable) {
 				t = end.Add(gap / 2)
 			}
 		}
-		if p.r.chance(0.2) {
+		if p.r.chance(0.3) {
 			t = t.Add(time.Duration(1+p.r.below(6)) * grid) // people, coffee, a fault put right
 		}
 	}
@@ -206,7 +207,7 @@ func (p *past) fill(u *upTable) {
 // freedom; -1 where there is nothing worth it.
 func (p *past) choose(u *upTable, t time.Time) (source int, receiver string, minutes int) {
 	source = -1
-	best := 0.45
+	best := 0.45 // below this it is not worth a scan
 	for i := range p.c.Sources {
 		s := &p.c.Sources[i]
 		if p.kinds[s.Name] == fresh {
@@ -218,7 +219,7 @@ func (p *past) choose(u *upTable, t time.Time) (source int, receiver string, min
 			continue
 		}
 		for _, code := range u.block.Receivers {
-			if v := p.urgency(u, s, code, t) * p.r.between(0.3, 1.2); v > best {
+			if v := p.urgency(u, s, code, t) * p.r.between(0.2, 1.2); v > best {
 				source, receiver, minutes, best = i, code, length, v
 			}
 		}
@@ -241,7 +242,7 @@ func (p *past) urgency(u *upTable, s *scheduler.Source, receiver string, t time.
 		if gone < 0.7 {
 			continue
 		}
-		if w.pair {
+		if w.pair { // half of it comes from the scan in the other band
 			gone /= 2
 		}
 		total += gone * math.Sqrt(w.priority)

@@ -93,13 +93,16 @@ func TestBinariesArePlausible(t *testing.T) {
 		// The mass function bounds the companion: m2 sin i of a pulsar of 1.3
 		// to 1.7 solar masses (Lorimer & Kramer 2005, section 8.3, from memory).
 		n := 2 * math.Pi / (b.PbD * dayS)
-		f := math.Pow(b.A1Ls, 3) * n * n / sunLightS
+		f := b.A1Ls * b.A1Ls * b.A1Ls * n * n / sunLightS
 		if f <= 0 || f > 0.3 {
 			t.Errorf("%s: mass function %.4g", kept.Sources[i].Name, f)
 		}
 		if b.M2Msun > 0 {
 			masses++
-			implied := func(m1 float64) float64 { return math.Pow(b.M2Msun*b.Sini, 3) / math.Pow(m1+b.M2Msun, 2) }
+			implied := func(m1 float64) float64 {
+				projected, total := b.M2Msun*b.Sini, m1+b.M2Msun
+				return projected * projected * projected / (total * total)
+			}
 			if f < 0.98*implied(1.7) || f > 1.02*implied(1.3) {
 				t.Errorf("%s: mass function %.4g, its masses imply %.4g to %.4g", kept.Sources[i].Name, f, implied(1.7),
 					implied(1.3))

@@ -11,7 +11,11 @@ const (
 	saltbush   = "SBP" // alt-azimuth with a wide-band receiver, Australia
 )
 
-// Bands: P about 400 MHz, U about 800, L about 1400, S about 2700.
+// telescopes invents the five. Sizes, temperatures and drives are those usual
+// for dishes of the kind (common practice); names and places are no real ones.
+// Between them they show each mount, a cable wrap that matters, a horizon with
+// hills, and bands P (about 400 MHz), U (800), L (1400) and S (2700), one
+// receiver covering three of them at once.
 func telescopes() []scheduler.Telescope {
 	return []scheduler.Telescope{
 		{
@@ -20,6 +24,8 @@ func telescopes() []scheduler.Telescope {
 			Horizon: []scheduler.HorizonPoint{{AzimuthDeg: 0, ElevationDeg: 6}, {AzimuthDeg: 60, ElevationDeg: 9.5},
 				{AzimuthDeg: 130, ElevationDeg: 11},
 				{AzimuthDeg: 175, ElevationDeg: 7}, {AzimuthDeg: 240, ElevationDeg: 8.5}, {AzimuthDeg: 310, ElevationDeg: 12.5}},
+			// A heavy dish: slow to set up, slow to turn. From one end of its wrap
+			// to the other takes twenty minutes.
 			SetupS: 900, CalS: 60, SwitchS: 90, SettleS: 15,
 			AzimuthRangeDeg: [2]float64{-160, 360}, RateAzDegS: 0.4, RateElDegS: 0.2, AccelAzDegS2: 0.04, AccelElDegS2: 0.03,
 			Receivers: []scheduler.Receiver{
@@ -51,6 +57,7 @@ func telescopes() []scheduler.Telescope {
 			Timezone: "America/Los_Angeles",
 			Mount:    scheduler.MountEquatorial, ElevationMinDeg: 10, ElevationMaxDeg: 90, SunMinDeg: 5,
 			SetupS: 600, CalS: 60, SwitchS: 150, SettleS: 20,
+			// An old polar mount: no zenith to avoid, but no way past six hours.
 			HourAngleRangeH: [2]float64{-5.5, 5.5}, RateHADegS: 0.35, RateDecDegS: 0.3, AccelHADegS2: 0.03, AccelDecDegS2: 0.03,
 			Receivers: []scheduler.Receiver{
 				{Code: "L1", Bands: []string{"L"}, FreqMHz: 1380, BandwidthMHz: 320, NPol: 2, TrecK: 20, TatmK: 2.2, GainKPerJy: 0.95,
@@ -64,6 +71,8 @@ func telescopes() []scheduler.Telescope {
 			Timezone: "Australia/Adelaide",
 			Mount:    scheduler.MountTransit, ElevationMinDeg: 15, ElevationMaxDeg: 90, SunMinDeg: 4,
 			SetupS: 300, CalS: 30, SwitchS: 60, SettleS: 10,
+			// A reflector fixed in azimuth: great area, each source for less than
+			// two hours a day.
 			TrackHalfMin: 50, RateElDegS: 0.12, AccelElDegS2: 0.01,
 			Receivers: []scheduler.Receiver{
 				{Code: "U1", Bands: []string{"U"}, FreqMHz: 780, BandwidthMHz: 320, NPol: 2, TrecK: 30, TatmK: 2, GainKPerJy: 1.9,

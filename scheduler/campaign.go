@@ -3,6 +3,18 @@
 // history, pins), what a plan is, and the reading, checking and writing of the
 // two files that carry them.
 //
+// ReadCampaign and ReadPlan read files strictly: everything wrong with a file
+// is reported at once, each problem with its JSON Pointer and with a message
+// that names the thing, the field, the value and what is allowed (Problems).
+// Campaign.Validate applies the same rules to a campaign made in memory.
+// WriteCampaign and WritePlan write one canonical form, the same bytes for the
+// same meaning. CampaignSchema and PlanSchema describe the files as JSON
+// Schema. All of them follow one table of fields for each sort of object
+// (tables_campaign.go, tables_plan.go); a field is added to the format by adding
+// it to the struct and to its table, and a test fails where one is forgotten.
+//
+// Errors that callers must tell apart are of one of the kinds in errors.go.
+//
 // The package is pure: it reads no clock, file or database and keeps no
 // globals that change. Units stand in the names: degrees unless a name says
 // otherwise, longitudes east-positive, every instant UTC with a resolution of

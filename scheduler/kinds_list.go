@@ -23,6 +23,7 @@ func (k names) read(r *fileReader, to any) {
 	}
 }
 
+// check finds duplicates by looking back; lists of names are short.
 func (k names) check(c *checker, from any) {
 	v := *from.(*[]string)
 	switch {
@@ -140,6 +141,7 @@ func (k lengths) read(r *fileReader, to any) {
 	}
 }
 
+// check keeps lengths to what fits into the longest block.
 func (k lengths) check(c *checker, from any) {
 	v := *from.(*[]int)
 	if len(v) == 0 || len(v) > MaxScanLengths {

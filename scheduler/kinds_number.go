@@ -244,6 +244,7 @@ type optionalNumber struct{}
 
 func (k optionalNumber) reset(to any) { *to.(**float64) = nil }
 
+// read takes null as absent, as programs write what they do not know.
 func (k optionalNumber) read(r *fileReader, to any) {
 	if r.lex.Kind() == strictjson.Null {
 		r.lex.Null()

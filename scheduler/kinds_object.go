@@ -33,6 +33,7 @@ func (k optional[T]) read(r *fileReader, to any) {
 	k.table.read(r, p)
 }
 
+// check is only called for an object that is there: absent is the default.
 func (k optional[T]) check(c *checker, from any) { k.table.check(c, *from.(**T)) }
 func (k optional[T]) isDefault(from any) bool    { return *from.(**T) == nil }
 func (k optional[T]) write(w *writer, from any)  { k.table.write(w, *from.(**T)) }
@@ -69,6 +70,8 @@ func (k list[T]) count(c *checker, n int) {
 	}
 }
 
+// check looks at no more items than are allowed: a list that is far too long is
+// one problem, not one for each item.
 func (k list[T]) check(c *checker, from any) {
 	items := *from.(*[]T)
 	k.count(c, len(items))

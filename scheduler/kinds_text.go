@@ -34,6 +34,7 @@ func (k text) limit() int {
 	return MaxTextLength
 }
 
+// check counts characters, not bytes, and tells of one fault at a time.
 func (k text) check(c *checker, from any) {
 	v := *from.(*string)
 	switch {
@@ -76,6 +77,7 @@ func (k choice) read(r *fileReader, to any) {
 	}
 }
 
+// check lists the words, and guesses at the one that was meant.
 func (k choice) check(c *checker, from any) {
 	if v := *from.(*string); !contains(k, v) {
 		c.bad("%s is %s; it must be %s%s", c.name(), quote(v), orList(k), c.suggest(v, k))

@@ -76,6 +76,8 @@ var certificateTable = table{what: "a certificate", fields: []field{
 // figure is a positive number; absent, null and 0 all say that there is none.
 type figure struct{ number }
 
+// read takes null as absent: other programs write it for a pulsar that cannot
+// be detected.
 func (k figure) read(r *fileReader, to any) {
 	if r.lex.Kind() == strictjson.Null {
 		r.lex.Null()
@@ -100,6 +102,7 @@ type reasons struct{}
 
 func (k reasons) reset(to any) { *to.(*[]Reason) = nil }
 
+// read gives a plain string no code and no count.
 func (k reasons) read(r *fileReader, to any) {
 	p := to.(*[]Reason)
 	r.list("a list", MaxReasons, func(int) {
@@ -141,6 +144,8 @@ type prices struct{}
 
 func (k prices) reset(to any) { *to.(*map[string]float64) = map[string]float64{} }
 
+// read keeps prices of 0, which mean the same as none: a plan is written back
+// with what it was read with.
 func (k prices) read(r *fileReader, to any) {
 	if !r.expectObject() {
 		return
@@ -180,6 +185,7 @@ func (k prices) check(c *checker, from any) {
 
 func (k prices) isDefault(any) bool { return false }
 
+// write sorts the names, so that the bytes do not depend on the map's order.
 func (k prices) write(w *writer, from any) {
 	m := *from.(*map[string]float64)
 	w.raw("{")

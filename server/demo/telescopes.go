@@ -16,7 +16,10 @@ const (
 // Between them they show each mount, a cable wrap that matters, a horizon with
 // hills, and bands P (about 400 MHz), U (800), L (1400) and S (2700), one
 // receiver covering three of them at once.
-func telescopes() []scheduler.Telescope {
+func telescopes() []scheduler.Telescope { return append(northern(), southern()...) }
+
+// northern are the two in Europe and the one in North America.
+func northern() []scheduler.Telescope {
 	return []scheduler.Telescope{
 		{
 			Code: wolkenried, Name: "Wolkenried 80 m", LongitudeDeg: 10.7312, LatitudeDeg: 49.5871, HeightM: 412, Timezone: "Europe/Berlin",
@@ -66,6 +69,12 @@ func telescopes() []scheduler.Telescope {
 					Digitisation: 1.05},
 			},
 		},
+	}
+}
+
+// southern are the two in Australia.
+func southern() []scheduler.Telescope {
+	return []scheduler.Telescope{
 		{
 			Code: quandong, Name: "Quandong Downs Transit", LongitudeDeg: 138.2254, LatitudeDeg: -30.6419, HeightM: 148,
 			Timezone: "Australia/Adelaide",

@@ -70,6 +70,7 @@ func (x *Lexer) fail(pos int, format string, args ...any) {
 	if x.err != nil {
 		return
 	}
+	// Counted only now: lines cost nothing while all goes well.
 	before := x.data[:min(pos, len(x.data))]
 	line := bytes.Count(before, []byte{'\n'}) + 1
 	column := len(before) - (bytes.LastIndexByte(before, '\n') + 1) + 1
@@ -181,6 +182,8 @@ func (x *Lexer) BeginArray() bool { return x.open('[', "a list") }
 
 // next goes to the next member of an object or list that ends with end; first
 // is true for its first member.
+//
+// A comma must stand between members and may not follow the last.
 func (x *Lexer) next(first bool, end byte) bool {
 	if x.err != nil {
 		return false

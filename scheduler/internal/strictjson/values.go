@@ -43,7 +43,8 @@ func (x *Lexer) text() ([]byte, bool) {
 	return nil, false
 }
 
-// escaped reads a string that has escapes, from its first byte on.
+// escaped reads a string that has escapes, from its first byte on, into bytes of
+// its own.
 func (x *Lexer) escaped(start int) ([]byte, bool) {
 	var out []byte
 	for i := start; i < len(x.data); {
@@ -90,6 +91,7 @@ func (x *Lexer) escape(out []byte, i int) ([]byte, int, bool) {
 		x.fail(i, "an escape that JSON does not have; write a backslash as \\\\")
 		return nil, 0, false
 	}
+	// Characters beyond 16 bits are written as two escapes, a surrogate pair.
 	if !utf16.IsSurrogate(r) {
 		return utf8.AppendRune(out, r), i + 6, true
 	}
@@ -138,6 +140,8 @@ func (x *Lexer) Number() ([]byte, bool) {
 		return nil, false
 	}
 	start, i := x.pos, x.pos
+	// The grammar of RFC 8259: no plus sign, no leading zero, digits on both
+	// sides of the point.
 	if x.data[i] == '-' {
 		i++
 	}

@@ -1,0 +1,1 @@
+-- kept by a test

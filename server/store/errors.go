@@ -1,0 +1,125 @@
+package store
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"net"
+	"strings"
+
+	"github.com/jackc/pgx/v5"
+	"github.com/jackc/pgx/v5/pgconn"
+
+	"cadencewright/scheduler"
+)
+
+// FieldError is a conflict or a bad value in one field.
+type FieldError struct {
+	Field   string
+	Message string
+	kind    error
+}
+
+func (e *FieldError) Error() string { return e.Message }
+
+// Unwrap is the error's kind.
+func (e *FieldError) Unwrap() error { return e.kind }
+
+// StaleError says that somebody else changed the thing since it was read.
+type StaleError struct {
+	What    string
+	Current int64 // its version now
+}
+
+func (e *StaleError) Error() string {
+	return fmt.Sprintf("%s has been changed by somebody else in the meantime; its version now is %d", e.What, e.Current)
+}
+
+// Unwrap is the error's kind.
+func (e *StaleError) Unwrap() error { return scheduler.ErrStale }
+
+// constraints gives people's words for a broken constraint.
+var constraints = map[string]FieldError{
+	"campaign_name_unique":   {"name", "a campaign of that name is already there", scheduler.ErrConflict},
+	"campaign_one_live":      {"live", "another campaign is live", scheduler.ErrConflict},
+	"telescope_code_unique":  {"code", "a telescope with that code is already there", scheduler.ErrConflict},
+	"receiver_code_unique":   {"code", "the telescope has a receiver with that code already", scheduler.ErrConflict},
+	"source_name_unique":     {"name", "a source of that name is already there", scheduler.ErrConflict},
+	"goal_code_unique":       {"id", "a goal with that id is already there", scheduler.ErrConflict},
+	"block_code_unique":      {"id", "a block with that id is already there", scheduler.ErrConflict},
+	"block_no_overlap":       {"start", "the block overlaps another block of its telescope", scheduler.ErrConflict},
+	"scan_no_overlap":        {"start", "the scan overlaps another scan of its telescope in the issued plan", scheduler.ErrConflict},
+	"plan_revision_unique":   {"revision", "another plan of this week was issued at the same moment", scheduler.ErrConflict},
+	"plan_one_issued":        {"horizon", "an issued plan of another stretch of time overlaps this one", scheduler.ErrConflict},
+	"plan_job_one_active":    {"week", "a planning job for this week is already under way", scheduler.ErrConflict},
+	"person_name_unique":     {"name", "a person of that name is already there", scheduler.ErrConflict},
+	"api_key_name_unique":    {"name", "a key of that name is already there", scheduler.ErrConflict},
+	"history_scan_unique":    {"scan", "the scan is in the history already", scheduler.ErrConflict},
+	"outcome_span":           {"ended_at", "the scan ends before it starts", scheduler.ErrInvalid},
+	"outcome_cause":          {"cause", "a lost scan needs a cause", scheduler.ErrInvalid},
+	"outcome_snr":            {"snr", "the signal-to-noise ratio must be above 0", scheduler.ErrInvalid},
+	"outcome_toa":            {"toa_us", "the TOA uncertainty must be above 0", scheduler.ErrInvalid},
+	"person_name_filled":     {"name", "a name is wanted", scheduler.ErrInvalid},
+	"api_key_name_filled":    {"name", "a name is wanted", scheduler.ErrInvalid},
+	"person_role":            {"role", "the role must be coordinator, observer or reader", scheduler.ErrInvalid},
+	"block_span":             {"end", "the end is not after the start", scheduler.ErrInvalid},
+	"campaign_span":          {"end", "the end is not after the start", scheduler.ErrInvalid},
+	"scan_telescope_id_fkey": {"telescope", "there is no such telescope", scheduler.ErrInvalid},
+}
+
+// classify turns the database's errors into kinds that the service knows.
+func classify(err error) error {
+	if err == nil || scheduler.KindOf(err) != nil {
+		return err
+	}
+	if errors.Is(err, pgx.ErrNoRows) {
+		return scheduler.Errorf(scheduler.ErrNotFound, "there is no such thing")
+	}
+	var pg *pgconn.PgError
+	if errors.As(err, &pg) {
+		if f, ok := constraints[pg.ConstraintName]; ok {
+			return &f
+		}
+		switch {
+		case pg.Code == "40001" || pg.Code == "40P01": // serialisation, deadlock
+			return scheduler.Errorf(scheduler.ErrUnavailable, "the database was busy with another change; try again")
+		case pg.Code == "57014":
+			return scheduler.Errorf(scheduler.ErrUnavailable, "the database took too long")
+		case strings.HasPrefix(pg.Code, "57P") || strings.HasPrefix(pg.Code, "53") || strings.HasPrefix(pg.Code, "08"):
+			return unavailable(err)
+		}
+		return fmt.Errorf("database: %w", err)
+	}
+	var netErr net.Error
+	var connect *pgconn.ConnectError
+	if errors.As(err, &netErr) || errors.As(err, &connect) || pgconn.SafeToRetry(err) || strings.Contains(err.Error(), "conn closed") ||
+		strings.Contains(err.Error(), "closed pool") || strings.Contains(err.Error(), "unexpected EOF") {
+		if !errors.Is(err, context.Canceled) {
+			return unavailable(err)
+		}
+	}
+	return err
+}
+
+// fault is an error on the way to the database.
+func fault(what string, err error) error {
+	if k := scheduler.KindOf(classify(err)); k != nil {
+		return classify(err)
+	}
+	if errors.Is(err, context.Canceled) {
+		return err
+	}
+	var pg *pgconn.PgError
+	if errors.As(err, &pg) {
+		return fmt.Errorf("database: %s: %w", what, err)
+	}
+	return unavailable(err)
+}
+
+// awayError is a database that does not answer; the cause is for the log.
+type awayError struct{ cause error }
+
+func (e *awayError) Error() string   { return "the database is away; try again in a moment" }
+func (e *awayError) Unwrap() []error { return []error{scheduler.ErrUnavailable, e.cause} }
+
+func unavailable(err error) error { return &awayError{err} }

@@ -1,0 +1,171 @@
+// Package store keeps everything in Postgres and is the only place that speaks
+// SQL: the planner's vocabulary goes in and comes out. What must never be true
+// (two live scans of one telescope at once, a dangling name, two live
+// campaigns) is forbidden by the schema; a broken constraint comes back as a
+// conflict that names its field. Every change is written with its line in the
+// journal, in one transaction.
+package store
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"time"
+
+	"github.com/jackc/pgx/v5"
+	"github.com/jackc/pgx/v5/pgtype"
+	"github.com/jackc/pgx/v5/pgxpool"
+	"github.com/jackc/pgx/v5/stdlib"
+	"github.com/pressly/goose/v3"
+	"github.com/pressly/goose/v3/lock"
+	"github.com/riverqueue/river/riverdriver/riverpgxv5"
+	"github.com/riverqueue/river/rivermigrate"
+
+	"cadencewright/migrations"
+)
+
+// Store is the database. It may be used from several goroutines.
+type Store struct {
+	pool  *pgxpool.Pool
+	clock func() time.Time
+}
+
+// Options say how to open the store.
+type Options struct {
+	MaxConns int32
+	// Clock gives the time of every transaction; nil: the system's.
+	Clock func() time.Time
+}
+
+// statementTimeout bounds every statement: what takes longer is a fault.
+const statementTimeout = "20000" // milliseconds
+
+// Open connects to the database. It does not migrate.
+func Open(ctx context.Context, dsn string, o Options) (*Store, error) {
+	cfg, err := pgxpool.ParseConfig(dsn)
+	if err != nil {
+		return nil, errors.New("DATABASE_URL is not a connection string that Postgres understands") // the cause would show the password
+	}
+	if o.MaxConns > 0 {
+		cfg.MaxConns = o.MaxConns
+	}
+	cfg.ConnConfig.RuntimeParams["application_name"] = "cadencewright"
+	cfg.ConnConfig.RuntimeParams["statement_timeout"] = statementTimeout
+	cfg.ConnConfig.RuntimeParams["idle_in_transaction_session_timeout"] = statementTimeout
+	cfg.ConnConfig.ConnectTimeout = 5 * time.Second
+	cfg.AfterConnect = func(_ context.Context, c *pgx.Conn) error {
+		// timestamptz as UTC: pgx gives local time otherwise.
+		c.TypeMap().RegisterType(&pgtype.Type{Name: "timestamptz", OID: pgtype.TimestamptzOID, Codec: &pgtype.TimestamptzCodec{ScanLocation: time.UTC}})
+		registerRange(c)
+		return nil
+	}
+	pool, err := pgxpool.NewWithConfig(ctx, cfg)
+	if err != nil {
+		return nil, fault("connect", err)
+	}
+	s := &Store{pool: pool, clock: o.Clock}
+	if s.clock == nil {
+		s.clock = time.Now
+	}
+	return s, nil
+}
+
+// registerRange gives tstzrange the UTC codec too.
+func registerRange(c *pgx.Conn) {
+	if t, ok := c.TypeMap().TypeForOID(pgtype.TimestamptzOID); ok {
+		c.TypeMap().RegisterType(&pgtype.Type{Name: "tstzrange", OID: pgtype.TstzrangeOID, Codec: &pgtype.RangeCodec{ElementType: t}})
+	}
+}
+
+// Close closes every connection.
+func (s *Store) Close() { s.pool.Close() }
+
+// Ping tells whether the database answers.
+func (s *Store) Ping(ctx context.Context) error {
+	if err := s.pool.Ping(ctx); err != nil {
+		return fault("ping", err)
+	}
+	return nil
+}
+
+// Pool is for the job queue's driver, which needs connections of its own.
+func (s *Store) Pool() *pgxpool.Pool { return s.pool }
+
+// Stat is the pool's figures, for metrics.
+func (s *Store) Stat() *pgxpool.Stat { return s.pool.Stat() }
+
+// QueueSchema is the schema of the job queue's own tables.
+const QueueSchema = "river"
+
+// Migrate brings the schema up to date: ours, then the job queue's, under one
+// lock, so that several copies may start at once. It reports how many steps it
+// applied.
+func (s *Store) Migrate(ctx context.Context) (int, error) {
+	locker, err := lock.NewPostgresSessionLocker(lock.WithLockTimeout(1, 60))
+	if err != nil {
+		return 0, err
+	}
+	db := stdlib.OpenDBFromPool(s.pool)
+	defer db.Close()
+	p, err := goose.NewProvider(goose.DialectPostgres, db, migrations.FS, goose.WithSessionLocker(locker))
+	if err != nil {
+		return 0, fmt.Errorf("migrations: %w", err)
+	}
+	done, err := p.Up(ctx)
+	if err != nil {
+		return 0, fault("migrate", err)
+	}
+	m, err := rivermigrate.New(riverpgxv5.New(s.pool), &rivermigrate.Config{Schema: QueueSchema})
+	if err != nil {
+		return 0, fmt.Errorf("migrations of the job queue: %w", err)
+	}
+	// Copies that start together take turns here too.
+	err = s.tx(ctx, func(t *tx) error {
+		_, err := t.q.Exec(ctx, "select pg_advisory_xact_lock(7264981723)")
+		return err
+	})
+	if err != nil {
+		return 0, err
+	}
+	res, err := m.Migrate(ctx, rivermigrate.DirectionUp, nil)
+	if err != nil {
+		return 0, fault("migrate the job queue", err)
+	}
+	return len(done) + len(res.Versions), nil
+}
+
+// tx is one transaction: the only handle to the database in its scope, and one
+// instant for all that it writes.
+type tx struct {
+	q   pgx.Tx
+	now time.Time
+}
+
+// tx runs f in a transaction. The rollback survives the cancelling of ctx.
+func (s *Store) tx(ctx context.Context, f func(*tx) error) error {
+	return s.txWith(ctx, pgx.TxOptions{}, f)
+}
+
+// snapshot runs f in a transaction that sees one state of the database.
+func (s *Store) snapshot(ctx context.Context, f func(*tx) error) error {
+	return s.txWith(ctx, pgx.TxOptions{IsoLevel: pgx.RepeatableRead, AccessMode: pgx.ReadOnly}, f)
+}
+
+func (s *Store) txWith(ctx context.Context, o pgx.TxOptions, f func(*tx) error) error {
+	q, err := s.pool.BeginTx(ctx, o)
+	if err != nil {
+		return fault("begin", err)
+	}
+	defer func() {
+		c, cancel := context.WithTimeout(context.WithoutCancel(ctx), 5*time.Second)
+		defer cancel()
+		_ = q.Rollback(c) // after a commit it does nothing
+	}()
+	if err := f(&tx{q, s.clock().UTC().Truncate(time.Millisecond)}); err != nil {
+		return classify(err)
+	}
+	if err := q.Commit(ctx); err != nil {
+		return classify(err)
+	}
+	return nil
+}

@@ -34,7 +34,7 @@ func (k *checker) observe(s *scan) ([]sky.Place, error) {
 			return nil, err
 		}
 		sinEl := math.Sin(p.ElDeg * math.Pi / 180)
-		s.info += rad.InfoRate(sinEl, s.receiver.usable(t.localHour(mid))) * k.grid.seconds()
+		s.info += rad.InfoRate(max(sinEl, lowestSinEl), s.receiver.usable(t.localHour(mid))) * k.grid.seconds()
 	}
 }
 

@@ -218,7 +218,7 @@ func (n *naive) info(t testing.TB, c candidate) float64 {
 		if loss := c.receiver.RFILoss; len(loss) > 0 {
 			part -= loss[at.In(c.block.telescope.zone).Hour()]
 		}
-		sum += c.source.radiometer[c.receiver.index].InfoRate(math.Sin(el*math.Pi/180), part) * n.grid.Seconds()
+		sum += c.source.radiometer[c.receiver.index].InfoRate(math.Sin(max(el, 0.1)*math.Pi/180), part) * n.grid.Seconds()
 	}
 	return sum
 }

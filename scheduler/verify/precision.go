@@ -1,6 +1,8 @@
 package verify
 
 import (
+	"math"
+
 	"cadencewright/astro/sensitivity"
 )
 
@@ -14,6 +16,11 @@ func newRadiometer(s *source, r *receiver) sensitivity.Radiometer {
 
 // sees reports whether pulses of the source can be told apart with a receiver.
 func (s *source) sees(r *receiver) bool { return s.radiometer[r.index].Detectable() }
+
+// lowestSinEl is the sine of the elevation, 0.1 degrees, below which the air is
+// taken to be no thicker. Only scans that break a limit reach down there, and
+// what they gather should not depend on an infinity at the horizon.
+var lowestSinEl = math.Sin(0.1 * math.Pi / 180)
 
 // localHour is the hour of the day, 0 to 23, at the telescope.
 func (t *telescope) localHour(at msec) int { return at.time().In(t.zone).Hour() }

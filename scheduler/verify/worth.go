@@ -63,7 +63,7 @@ func (a *appraiser) addUpInfo(r *receiver) {
 		if len(r.RFILoss) > 0 {
 			usable = r.usable(v.hours[i])
 		}
-		a.info[i+1] = a.info[i] + rad.InfoRate(v.sinEl[2*i+1], usable)*stepS
+		a.info[i+1] = a.info[i] + rad.InfoRate(max(v.sinEl[2*i+1], lowestSinEl), usable)*stepS
 	}
 }
 

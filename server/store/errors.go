@@ -83,6 +83,8 @@ func classify(err error) error {
 		switch {
 		case pg.Code == "40001" || pg.Code == "40P01": // serialisation, deadlock
 			return scheduler.Errorf(scheduler.ErrUnavailable, "the database was busy with another change; try again")
+		case pg.Code == "22021" || pg.Code == "22P05":
+			return scheduler.Errorf(scheduler.ErrInvalid, "a text holds a character that cannot be stored")
 		case pg.Code == "57014":
 			return scheduler.Errorf(scheduler.ErrUnavailable, "the database took too long")
 		case strings.HasPrefix(pg.Code, "57P") || strings.HasPrefix(pg.Code, "53") || strings.HasPrefix(pg.Code, "08"):

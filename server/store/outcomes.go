@@ -176,7 +176,7 @@ func (t *tx) seenBefore(ctx context.Context, actor string, idem Idempotency) (bo
 	if len(idem.Key) > 200 {
 		return false, &FieldError{"Idempotency-Key", "the key is longer than 200 bytes", scheduler.ErrInvalid}
 	}
-	if _, err := t.q.Exec(ctx, qIdemLock, actor+"\x00"+idem.Key); err != nil {
+	if _, err := t.q.Exec(ctx, qIdemLock, actor+"|"+idem.Key); err != nil {
 		return false, err
 	}
 	rows, err := t.q.Query(ctx, qIdemGet, actor, idem.Key)

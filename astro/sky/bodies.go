@@ -26,7 +26,8 @@ func Sun(t time.Time) (Body, error) {
 		return Body{}, err
 	}
 	f := newFrame(tt)
-	return Body{RADeg: f.sun.Lon().Deg(), DecDeg: f.sun.Lat().Deg(),
+	sun := f.apparentSun(tt)
+	return Body{RADeg: wrap360(sun.Lon().Deg()), DecDeg: sun.Lat().Deg(),
 		DistanceKm: meeus.SunEcliptic(tt.JD()).Norm() * meeus.AUKm}, nil
 }
 
@@ -38,7 +39,7 @@ func Moon(t time.Time) (Body, error) {
 		return Body{}, err
 	}
 	v := moonTrue(tt)
-	return Body{RADeg: v.Lon().Deg(), DecDeg: v.Lat().Deg(), DistanceKm: v.Norm()}, nil
+	return Body{RADeg: wrap360(v.Lon().Deg()), DecDeg: v.Lat().Deg(), DistanceKm: v.Norm()}, nil
 }
 
 // moonTrue is the vector to the Moon in km, true equator and equinox of date.
@@ -74,6 +75,9 @@ func MoonOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error)
 }
 
 func (b Body) over(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
+	if err := checkSite(site); err != nil {
+		return BodyOver{}, err
+	}
 	lst, err := timescale.LST(t, dut1S, site.Lon)
 	if err != nil {
 		return BodyOver{}, err

@@ -42,31 +42,18 @@ func Crossings(site astro.Geodetic, star astro.Star, elLimitDeg float64, start t
 	if !(elLimitDeg >= -90 && elLimitDeg <= 90) {
 		return nil, "", &astro.RangeError{Quantity: "elevation limit in degrees", Value: fmt.Sprint(elLimitDeg), Allowed: "-90 to 90"}
 	}
-	c := crossing{site: site, star: star, sinEl: math.Sin(elLimitDeg * math.Pi / 180), dut1S: dut1S}
-	end := start.Add(span)
-	var found []Crossing
-	turns := int(span/siderealDay) + 2
-	for k := -1; k <= turns; k++ {
-		for _, up := range []bool{true, false} {
-			t, ok, err := c.near(start.Add(time.Duration(k)*siderealDay), up)
-			if err != nil {
-				return nil, "", err
-			}
-			if ok && !t.Before(start) && t.Before(end) {
-				found = append(found, Crossing{At: t, Up: up})
-			}
-		}
-	}
-	slices.SortFunc(found, func(a, b Crossing) int { return a.At.Compare(b.At) })
-	found = slices.CompactFunc(found, func(a, b Crossing) bool { return a.Up == b.Up && b.At.Sub(a.At) < time.Minute })
-	if len(found) > 0 {
-		return found, Crosses, nil
-	}
-	p, err := Observe(site, star, start, dut1S)
+	p, err := Observe(site, star, start, dut1S) // also refuses what cannot be worked out at the start
 	if err != nil {
 		return nil, "", err
 	}
-	if p.ElDeg >= elLimitDeg {
+	c := crossing{site: site, star: star, sinEl: math.Sin(elLimitDeg * math.Pi / 180), dut1S: dut1S}
+	found, err := c.between(start, start.Add(span))
+	switch {
+	case err != nil:
+		return nil, "", err
+	case len(found) > 0:
+		return found, Crosses, nil
+	case p.ElDeg >= elLimitDeg:
 		return nil, AlwaysAbove, nil
 	}
 	return nil, AlwaysBelow, nil
@@ -75,6 +62,7 @@ func Crossings(site astro.Geodetic, star astro.Star, elLimitDeg float64, start t
 // siderealDay is one turn of the Earth against the equinox.
 const siderealDay time.Duration = 86164090530833 // nanoseconds: 86400 s / siderealRate
 
+// crossing is a limit and whose place is held against it.
 type crossing struct {
 	site  astro.Geodetic
 	star  astro.Star
@@ -92,8 +80,32 @@ func (c *crossing) hourAngleOf(dec astro.Angle) (astro.Angle, bool) {
 	return astro.Angle(math.Acos(cosH)), true
 }
 
+// between finds the crossings in [start, end). One sidereal day before the
+// start is searched too: a crossing just after it may seem to lie before it by
+// the place a day earlier.
+func (c *crossing) between(start, end time.Time) ([]Crossing, error) {
+	var found []Crossing
+	for t := start.Add(-siderealDay); t.Before(end); t = t.Add(siderealDay) {
+		if t.Before(timescale.First) {
+			continue
+		}
+		for _, up := range []bool{true, false} {
+			at, ok, err := c.near(t, up)
+			if err != nil {
+				return nil, err
+			}
+			if ok && !at.Before(start) && at.Before(end) {
+				found = append(found, Crossing{At: at, Up: up})
+			}
+		}
+	}
+	// Two days may both have found a crossing at their common end.
+	slices.SortFunc(found, func(a, b Crossing) int { return a.At.Compare(b.At) })
+	return slices.CompactFunc(found, func(a, b Crossing) bool { return a.Up == b.Up && b.At.Sub(a.At) < time.Minute }), nil
+}
+
 // near is the crossing in the sidereal day that begins at t, or a little
-// outside it.
+// outside it; none where that day runs out of the dates that can be used.
 func (c *crossing) near(t time.Time, up bool) (time.Time, bool, error) {
 	first := true
 	for range 8 {
@@ -102,6 +114,9 @@ func (c *crossing) near(t time.Time, up bool) (time.Time, bool, error) {
 			return t, false, err
 		}
 		t, first = t.Add(wait), false
+		if t.Before(timescale.First) || !t.Before(timescale.Last) {
+			return t, false, nil
+		}
 		if wait.Abs() < time.Millisecond {
 			break
 		}

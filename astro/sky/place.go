@@ -10,6 +10,7 @@
 package sky
 
 import (
+	"fmt"
 	"math"
 	"time"
 
@@ -36,7 +37,6 @@ type frame struct {
 	trueOfDate astro.Mat3
 	velocity   astro.Vec3 // of the Earth, in units of c, ICRS
 	invGamma   float64    // sqrt(1 - v²)
-	sun        astro.Vec3 // apparent direction, true of date
 	tdb        float64    // MJD, for proper motion
 }
 
@@ -45,8 +45,14 @@ func newFrame(tt timescale.MJD) frame {
 	jde := tt.JD()
 	f := frame{trueOfDate: meeus.TrueOfDate(jde), velocity: meeus.EarthVelocity(jde), tdb: tt.Float()}
 	f.invGamma = math.Sqrt(1 - f.velocity.Dot(f.velocity))
-	f.sun = f.trueOfDate.Apply(f.aberrate(meeus.EarthHeliocentric(jde).Scale(-1).Unit()))
 	return f
+}
+
+// apparentSun is the direction of the apparent Sun at a Terrestrial Time near
+// the frame's own: in half a day the frame moves by 0.3 arcsec. Light time needs
+// no step of its own, since the Sun hardly moves about the barycentre.
+func (f *frame) apparentSun(tt timescale.MJD) astro.Vec3 {
+	return f.trueOfDate.Apply(f.aberrate(meeus.EarthHeliocentric(tt.JD()).Scale(-1).Unit()))
 }
 
 // aberrate moves a geometric direction by annual aberration (the relativistic
@@ -62,9 +68,23 @@ func (f *frame) apparent(s astro.Star) astro.Vec3 {
 	return f.trueOfDate.Apply(f.aberrate(s.Direction(f.tdb)))
 }
 
+// checkSite refuses a site that is nowhere, which would make every number NaN.
+func checkSite(site astro.Geodetic) error {
+	if lat := site.Lat.Deg(); !(math.Abs(lat) <= 90) {
+		return &astro.RangeError{Quantity: "latitude in degrees", Value: fmt.Sprint(lat), Allowed: "-90 to 90"}
+	}
+	if lon := site.Lon.Deg(); !(math.Abs(lon) <= 360) {
+		return &astro.RangeError{Quantity: "longitude in degrees", Value: fmt.Sprint(lon), Allowed: "-360 to 360"}
+	}
+	return nil
+}
+
 // Observe finds a star over a site at one instant, everything worked out for
 // that instant; dut1S is UT1-UTC in seconds. Use a Window for many instants.
 func Observe(site astro.Geodetic, star astro.Star, t time.Time, dut1S float64) (Place, error) {
+	if err := checkSite(site); err != nil {
+		return Place{}, err
+	}
 	tt, err := timescale.TT(t)
 	if err != nil {
 		return Place{}, err
@@ -76,7 +96,7 @@ func Observe(site astro.Geodetic, star astro.Star, t time.Time, dut1S float64) (
 	f := newFrame(tt)
 	d := f.apparent(star)
 	p := over(d, lst, site.Lat)
-	p.SunDeg = d.AngleTo(f.sun).Deg()
+	p.SunDeg = d.AngleTo(f.apparentSun(tt)).Deg()
 	return p, nil
 }
 
@@ -91,10 +111,9 @@ func over(d astro.Vec3, lst, lat astro.Angle) Place {
 	w := d[0]*sinL - d[1]*cosL // toward the west
 	north := d[2]*cosPhi - x*sinPhi
 	up := d[2]*sinPhi + x*cosPhi
-	az := astro.Angle(math.Atan2(-w, north)).Wrap()
-	el := math.Atan2(up, math.Hypot(w, north)) // stays finite at the zenith, unlike an arc sine
 	return Place{
-		AzDeg: az.Deg(), ElDeg: el * 180 / math.Pi, HADeg: ha.Deg(), RADeg: ra.Deg(), DecDeg: d.Lat().Deg(),
+		AzDeg: azimuthDeg(north, w), ElDeg: elevationDeg(up, w, north),
+		HADeg: ha.Deg(), RADeg: wrap360(ra.Deg()), DecDeg: d.Lat().Deg(),
 		ParallacticDeg: parallactic(ha, d.Lat(), lat).Deg(),
 	}
 }

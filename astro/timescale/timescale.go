@@ -12,7 +12,6 @@ import (
 	"time"
 
 	"cadencewright/astro"
-	"cadencewright/astro/internal/meeus"
 )
 
 // TTMinusTAIS is TT-TAI in seconds, by definition (IAU 1991).
@@ -40,38 +39,6 @@ var leaps = []struct {
 	{1996, 1, 30}, {1994, 7, 29}, {1993, 7, 28}, {1992, 7, 27}, {1991, 1, 26}, {1990, 1, 25}, {1988, 1, 24},
 	{1985, 7, 23}, {1983, 7, 22}, {1982, 7, 21}, {1981, 7, 20}, {1980, 1, 19}, {1979, 1, 18}, {1978, 1, 17},
 	{1977, 1, 16}, {1976, 1, 15}, {1975, 1, 14}, {1974, 1, 13}, {1973, 1, 12}, {1972, 7, 11}, {1972, 1, 10},
-}
-
-// MJD is a Modified Julian Date in two parts, so that a microsecond survives:
-// a whole day and a fraction in [0, 1).
-type MJD struct {
-	Day  int
-	Frac float64
-}
-
-// NewMJD brings a day and any fraction into the normal form.
-func NewMJD(day int, frac float64) MJD {
-	whole := math.Floor(frac)
-	m := MJD{day + int(whole), frac - whole}
-	if m.Frac >= 1 { // a tiny negative fraction rounds up to a whole day
-		m.Day, m.Frac = m.Day+1, 0
-	}
-	return m
-}
-
-// Float is the date as one number, good to about a microsecond.
-func (m MJD) Float() float64 { return float64(m.Day) + m.Frac }
-
-// JD is the Julian Date as one number, good to about 40 microseconds.
-func (m MJD) JD() float64 { return 2400000.5 + float64(m.Day) + m.Frac }
-
-// AddS is the date some seconds later.
-func (m MJD) AddS(s float64) MJD { return NewMJD(m.Day, m.Frac+s/86400) }
-
-// DaysSince is the time in days since an epoch given as one number.
-func (m MJD) DaysSince(epochMJD float64) float64 {
-	whole := math.Floor(epochMJD)
-	return float64(m.Day-int(whole)) + (m.Frac - (epochMJD - whole))
 }
 
 // TAIMinusUTCS is TAI-UTC in seconds.
@@ -127,46 +94,21 @@ func TDB(t time.Time) (MJD, error) {
 }
 
 // FromTDB is the UTC instant of a TDB at the Earth's centre, to a microsecond.
+// A TDB within a leap second, which UTC here cannot name, gives the second
+// after it.
 func FromTDB(tdb MJD) (time.Time, error) {
 	tt := tdb.AddS(-TDBMinusTTS(tdb.Float()))
-	guess := fromUTC(tt)
-	tai, err := TAIMinusUTCS(guess)
-	if err != nil {
-		return time.Time{}, err
+	// The latest difference that reaches back no further than where it began.
+	for _, l := range leaps {
+		t := fromUTC(tt.AddS(-l.taiS - TTMinusTAIS))
+		if tai, err := TAIMinusUTCS(t); err == nil && tai >= l.taiS {
+			return t, nil
+		}
 	}
-	// Once more, for instants within a minute of a leap second.
-	tai, err = TAIMinusUTCS(fromUTC(tt.AddS(-tai - TTMinusTAIS)))
-	if err != nil {
-		return time.Time{}, err
-	}
-	return fromUTC(tt.AddS(-tai - TTMinusTAIS)), nil
+	_, err := TAIMinusUTCS(fromUTC(tt.AddS(-leaps[0].taiS - TTMinusTAIS)))
+	return time.Time{}, err
 }
 
 func fromUTC(m MJD) time.Time {
 	return time.Unix(int64(m.Day-mjdUnixEpoch)*86400, 0).UTC().Add(time.Duration(math.Round(m.Frac*86400e6)) * time.Microsecond)
-}
-
-// UT1 is the Earth's rotation as a time; dut1S is UT1-UTC in seconds.
-func UT1(t time.Time, dut1S float64) (MJD, error) {
-	if _, err := TAIMinusUTCS(t); err != nil {
-		return MJD{}, err
-	}
-	return UTC(t).AddS(dut1S), nil
-}
-
-// GAST is Greenwich apparent sidereal time, within 6 ms of the IAU 2006/2000A
-// value (IAU 1982 mean sidereal time with IAU 1980 nutation); dut1S is UT1-UTC
-// in seconds.
-func GAST(t time.Time, dut1S float64) (astro.Angle, error) {
-	ut1, err := UT1(t, dut1S)
-	if err != nil {
-		return 0, err
-	}
-	return meeus.ApparentSidereal(ut1.JD()), nil
-}
-
-// LST is local apparent sidereal time at an east-positive longitude, [0, 2π).
-func LST(t time.Time, dut1S float64, lon astro.Angle) (astro.Angle, error) {
-	g, err := GAST(t, dut1S)
-	return (g + lon).Wrap(), err
 }

@@ -6,6 +6,7 @@ import (
 	"github.com/soniakeys/meeus/v3/base"
 	"github.com/soniakeys/meeus/v3/kepler"
 	"github.com/soniakeys/meeus/v3/moonposition"
+	"github.com/soniakeys/meeus/v3/nutation"
 	"github.com/soniakeys/meeus/v3/planetelements"
 	"github.com/soniakeys/meeus/v3/solar"
 
@@ -52,8 +53,7 @@ func sunPerturbations(t float64) (lonDeg, rAU float64) {
 
 // EclipticToMean turns ecliptic into equatorial coordinates, both mean of date.
 func EclipticToMean(jde float64) astro.Mat3 {
-	_, _, eps := Nutation(jde)
-	return astro.RotX(-eps)
+	return astro.RotX(-astro.Angle(nutation.MeanObliquity(jde)))
 }
 
 // giants are the planets that move the Sun about the solar-system barycentre,

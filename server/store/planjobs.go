@@ -56,11 +56,20 @@ func scanJob(r pgx.CollectableRow) (PlanJob, error) {
 const qJobAdd = `insert into plan_job (campaign_id, horizon, state, seed, asked_by, asked_at, changed_at)
 values (@campaign, @horizon, 'queued', @seed, @actor, @now, @now) returning ` + jobColumns
 
+// A running job notes its progress many times a minute. One that has been
+// silent for jobSilence is dead: it must not keep its week from being planned.
+const jobSilence = time.Minute
+const qJobsDead = `update plan_job set state = 'failed', problem = 'the program that worked on it ended', changed_at = $2
+where campaign_id = $1 and state = 'running' and changed_at < $3`
+
 // AddJob makes a planning job and hands it to the queue by enqueue, in one
 // transaction. A week has at most one job under way: a second is a conflict.
 func (s *Store) AddJob(ctx context.Context, campaign int64, h scheduler.Horizon, seed int64, actor string, enqueue func(context.Context, pgx.Tx, int64) error) (PlanJob, error) {
 	var j PlanJob
 	err := s.tx(ctx, func(t *tx) error {
+		if _, err := t.q.Exec(ctx, qJobsDead, campaign, t.now, t.now.Add(-jobSilence)); err != nil {
+			return err
+		}
 		rows, err := t.q.Query(ctx, qJobAdd, pgx.NamedArgs{"campaign": campaign, "horizon": spanOf(h.From, h.To), "seed": seed, "actor": actor, "now": t.now})
 		if err != nil {
 			return err

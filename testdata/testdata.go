@@ -1,23 +1,37 @@
 // Package testdata finds and reads the reference tables beside it, for tests
 // of other packages. It holds no product code and nothing of the program may
-// depend on it.
+// depend on it. Tables are read by column name: one with other rows, or with
+// more columns, can be put in the place of any of them.
 package testdata
 
 import (
 	"encoding/csv"
 	"fmt"
+	"math"
 	"os"
 	"path/filepath"
-	"runtime"
 	"strconv"
 	"testing"
 	"time"
 )
 
-// Path is a file in this folder.
+// Path is a file in this folder, found by walking up from where the test runs
+// to the module's root.
 func Path(elem ...string) string {
-	_, here, _, _ := runtime.Caller(0)
-	return filepath.Join(append([]string{filepath.Dir(here)}, elem...)...)
+	dir, err := os.Getwd()
+	if err != nil {
+		panic(fmt.Sprintf("testdata: no working directory: %v", err))
+	}
+	for {
+		if _, err := os.Stat(filepath.Join(dir, "go.mod")); err == nil {
+			return filepath.Join(append([]string{dir, "testdata"}, elem...)...)
+		}
+		up := filepath.Dir(dir)
+		if up == dir {
+			panic("testdata: no go.mod in the working directory or above")
+		}
+		dir = up
+	}
 }
 
 // Row is one row of a table, by column name.
@@ -95,20 +109,32 @@ func (r Row) Time(col string) time.Time {
 }
 
 // Largest keeps the largest error of a table against what is allowed, and says
-// so when the test is done.
+// so when the test is done (shown by go test -v).
 type Largest struct {
-	what, unit string
-	rows       int
-	err        float64
-	share      float64 // of the allowed
-	row        string
+	what, unit string          // the unit with a space before it
+	rows       map[string]bool // that were checked
+	err        float64         // the largest
+	worst      float64         // the error that is the largest part of what is allowed
+	allowed    float64         // there
+	row        string          // there
 }
 
 // Watch starts keeping the largest error of a quantity.
 func Watch(t testing.TB, what, unit string) *Largest {
-	l := &Largest{what: what, unit: unit}
+	if unit != "" {
+		unit = " " + unit
+	}
+	l := &Largest{what: what, unit: unit, rows: map[string]bool{}, allowed: 1}
 	t.Cleanup(func() {
-		t.Logf("%s: %d rows, largest error %.3g %s (%.1f %% of what is allowed, %s)", l.what, l.rows, l.err, l.unit, 100*l.share, l.row)
+		t.Helper()
+		if len(l.rows) == 0 {
+			t.Logf("%s: rows 0", l.what)
+			return
+		}
+		t.Logf("%s: rows %d, largest error %.3g%s (allowed %.3g at %s)", l.what, len(l.rows), l.worst, l.unit, l.allowed, l.row)
+		if l.err > l.worst {
+			t.Logf("%s: %.3g%s where more is allowed", l.what, l.err, l.unit)
+		}
 	})
 	return l
 }
@@ -116,27 +142,18 @@ func Watch(t testing.TB, what, unit string) *Largest {
 // Check compares one value with what is wanted.
 func (l *Largest) Check(r Row, got, want, allowed float64) {
 	r.t.Helper()
-	l.Error(r, abs(got-want), allowed)
+	l.Error(r, math.Abs(got-want), allowed)
 }
 
 // Error takes the size of one error.
 func (l *Largest) Error(r Row, size, allowed float64) {
 	r.t.Helper()
-	l.rows++
+	l.rows[r.where] = true
 	if !(size <= allowed) { // also catches NaN
-		r.t.Errorf("%s: %s is off by %.6g %s, %.6g allowed", r.where, l.what, size, l.unit, allowed)
+		r.t.Errorf("%s: %s is off by %.6g%s, %.6g allowed", r.where, l.what, size, l.unit, allowed)
 	}
-	if size > l.err {
-		l.err = size
+	l.err = max(l.err, size)
+	if l.row == "" || size/allowed > l.worst/l.allowed {
+		l.worst, l.allowed, l.row = size, allowed, r.where
 	}
-	if s := size / allowed; s > l.share {
-		l.share, l.row = s, r.where
-	}
-}
-
-func abs(x float64) float64 {
-	if x < 0 {
-		return -x
-	}
-	return x
 }

@@ -15,6 +15,7 @@ import (
 
 // Roots of ERFA's elevation; max(1 s, 60 s x 0.0014 deg / slope), 5 arcsec.
 func TestCrossingsAgainstERFA(t *testing.T) {
+	count := testdata.Watch(t, "riseset: crossings missing or too many", "")
 	at := testdata.Watch(t, "riseset: instants", "s")
 	el := testdata.Watch(t, "riseset: elevation at them", "arcsec")
 	for _, r := range testdata.Table(t, "riseset") {
@@ -40,11 +41,8 @@ func TestCrossingsAgainstERFA(t *testing.T) {
 					mine = append(mine, c.At)
 				}
 			}
-			if len(mine) != len(want[up]) {
-				t.Errorf("%s: %d crossings (up: %v), wanted %d", r, len(mine), up, len(want[up]))
-				continue
-			}
-			for i := range mine {
+			count.Check(r, float64(len(mine)), float64(len(want[up])), 0.5)
+			for i := range min(len(mine), len(want[up])) {
 				at.Check(r, mine[i].Sub(want[up][i]).Seconds(), 0, allowed)
 				p, err := sky.Observe(site(r), star(r), mine[i], r.Num("dut1_s"))
 				if err != nil {

@@ -1,0 +1,160 @@
+package explain
+
+import "math"
+
+// offered is an option with what it would cost.
+type offered struct {
+	option
+	loss float64
+}
+
+// pair explains a unit that wants both bands near each other in time.
+func (q *question) pair() {
+	lo, hi := q.unit.Window()
+	best := q.newChoice()
+	used := map[int]bool{}
+	var sides [2][]offered
+	var counts [2]int
+	for i := range sides {
+		bit := uint32(1) << i
+		q.about = q.wants.Bands[i] + ": "
+		list := q.reaches(bit, lo-q.goal.WithinMin, hi)
+		counts[i] = len(byBlock(list))
+		sides[i] = q.offers(list, bit)
+	}
+	q.about = ""
+	if len(sides[0]) == 0 || len(sides[1]) == 0 {
+		q.oneBand(counts)
+		return
+	}
+	close := q.pairUp(sides, lo, hi, best, used)
+	best.blocks = len(used)
+	switch {
+	case best.possible > 0:
+		best.tell()
+	case close:
+		q.tooClose()
+	default:
+		q.farApart(sides)
+	}
+}
+
+// offers are options in one band: of each run of starts the first, the last and
+// some between, and the scans that stand in the plan.
+func (q *question) offers(list []reach, bit uint32) []offered {
+	const samples = 24
+	var out []offered
+	add := func(o option) {
+		if displaced, ok := q.cost(&o); ok {
+			out = append(out, offered{o, q.loss(displaced)})
+		}
+	}
+	for _, r := range list {
+		b := &q.Blocks[r.block]
+		o := option{block: r.block, receiver: r.receiver, place: r.place, bands: q.bandsOf(b, b.Receivers[r.receiver])}
+		for i := range r.place.Lengths {
+			l := &r.place.Lengths[i]
+			for _, run := range l.Runs {
+				step := max(1, (run.To-run.From)/samples)
+				for start := run.From; start < run.To; start += step {
+					if last := run.To - 1; start+step > last && start < last {
+						step = last - start
+					}
+					o.start, o.steps = start, l.Steps
+					o.startMin, o.endMin = b.Minute(start, q.GridMin), b.Minute(start+l.Steps, q.GridMin)
+					if o.startMin >= r.lo && o.startMin <= r.hi {
+						add(o)
+					}
+				}
+			}
+		}
+	}
+	for _, o := range q.standing() {
+		if o.bands&bit != 0 {
+			add(o)
+		}
+	}
+	return out
+}
+
+// pairUp weighs all pairs, and scans that have both bands. close says that some
+// would do but for the neighbouring windows.
+func (q *question) pairUp(sides [2][]offered, lo, hi float64, best *choice, used map[int]bool) (close bool) {
+	weigh := func(at float64, loss float64, options ...*option) {
+		gain := q.unit.Weight * q.unit.Timeliness(at)
+		if gain == 0 {
+			return
+		}
+		if !q.spaced(at) {
+			close = true
+			return
+		}
+		for _, o := range options {
+			used[o.block] = true
+		}
+		if best.possible++; gain-loss > best.net {
+			best.possible--
+			best.consider(gain, options...)
+		}
+	}
+	for i := range sides[0] {
+		a := &sides[0][i]
+		if a.bands == q.allBands() {
+			weigh(a.startMin, a.loss, &a.option)
+		}
+		for j := range sides[1] {
+			b := &sides[1][j]
+			later := max(a.startMin, b.startMin)
+			if math.Abs(a.startMin-b.startMin) <= q.goal.WithinMin && later >= lo && later <= hi && q.compatible(&a.option, &b.option) {
+				weigh(later, a.loss+b.loss, &a.option, &b.option)
+			}
+		}
+	}
+	return close
+}
+
+// compatible reports whether two options of one source can both stand. Those
+// in one block need room between them like any two scans, at the turns of the
+// azimuth drive that each would take by itself.
+func (q *question) compatible(a, b *option) bool {
+	if a.block != b.block || a.had != nil || b.had != nil {
+		return true // cost has seen to the scans of the plan
+	}
+	if a.startMin > b.startMin {
+		a, b = b, a
+	}
+	_, from := poses(a.place, a.start, a.steps, a.turnsDeg)
+	to, _ := poses(b.place, b.start, b.steps, b.turnsDeg)
+	return roomFor(&q.Blocks[a.block], from, to, a.receiver != b.receiver, (b.startMin-a.endMin)*60)
+}
+
+// oneBand notes that only one of the two bands can be observed at all.
+func (q *question) oneBand(counts [2]int) {
+	for i := range counts {
+		if counts[i] > 0 && counts[1-i] == 0 {
+			q.foundWhole(NoPair, "%s can be observed in %s, %s in none.", q.wants.Bands[i], blocks(counts[i]), q.wants.Bands[1-i])
+		}
+	}
+}
+
+// farApart notes how near to each other the two bands can be observed.
+func (q *question) farApart(sides [2][]offered) {
+	nearest, a, b := math.Inf(1), &option{}, &option{}
+	for i := range sides[0] {
+		for j := range sides[1] {
+			x, y := &sides[0][i].option, &sides[1][j].option
+			if apart := math.Abs(x.startMin - y.startMin); apart < nearest && q.compatible(x, y) {
+				nearest, a, b = apart, x, y
+			}
+		}
+	}
+	switch {
+	case math.IsInf(nearest, 1):
+		q.foundWhole(NoPair, "%s and %s can be observed only at the same time at the same telescope.", q.wants.Bands[0], q.wants.Bands[1])
+	case nearest <= q.goal.WithinMin:
+		q.foundWhole(NoPair, "Both bands can be observed near each other only outside the time in which it counts.")
+	default:
+		q.foundWhole(NoPair, "The nearest starts in the two bands are %s apart (%s: %s; %s: %s); %s are allowed.", span(nearest),
+			q.wants.Bands[0], q.titled(a), q.wants.Bands[1], q.titled(b), span(q.goal.WithinMin))
+	}
+}

@@ -70,7 +70,8 @@ var giants = []struct {
 }
 
 // sunFromBarycentre is the Sun's place from the solar-system barycentre in au,
-// mean ecliptic of date, by the four giant planets (chapter 31): 0.02 s.
+// mean ecliptic of date, by the four giant planets (chapter 31): 0.02 s of light
+// time, where leaving the planets out errs by up to 4.9 s.
 func sunFromBarycentre(jde float64) astro.Vec3 {
 	var sum astro.Vec3
 	total := 1.0
@@ -94,7 +95,8 @@ func heliocentric(e *planetelements.Elements) astro.Vec3 {
 }
 
 // EarthBarycentric is the Earth's centre from the solar-system barycentre in
-// au, J2000.0 equatorial: 0.026 s of light time at worst against epv00.
+// au, J2000.0 equatorial: 0.035 s of light time at worst against ERFA epv00 in
+// 1972 to 2099, 0.026 s in 2026 to 2030.
 func EarthBarycentric(jde float64) astro.Vec3 {
 	ecliptic := sunFromBarycentre(jde).Add(SunEcliptic(jde).Scale(-1))
 	return toJ2000(jde, ecliptic)

@@ -38,7 +38,7 @@ func (q *question) cadence() {
 		case best.possible > before:
 			best.blocks++
 		case tooClose > 0:
-			q.tooClose()
+			q.tooClose(false)
 		case top > 0:
 			q.imprecise(top, topOf)
 		}
@@ -98,9 +98,9 @@ func (q *question) instant(ui int) float64 {
 	return at
 }
 
-// tooClose notes that a block's scans come too soon before or after those of a
-// neighbouring window.
-func (q *question) tooClose() {
+// tooClose notes that a block's scans, or all together, come too soon before or
+// after those of a neighbouring window.
+func (q *question) tooClose(whole bool) {
 	var other *units.Unit
 	at, gap := 0.0, 0
 	for _, ui := range q.goal.Units {
@@ -115,10 +115,12 @@ func (q *question) tooClose() {
 	if other == nil {
 		return
 	}
-	q.found(TooClose, 0, func(n int) string {
-		return sentence("Every possible start in %s is less than half of the interval (%.2f d) from that of %s, which the plan has at %s.",
-			blocks(n), other.Every/2/1440, other.Name, clock(at))
-	})
+	from := sentence("is less than half of the interval (%.2f d) from that of %s, which the plan has at %s.", other.Every/2/1440, other.Name, clock(at))
+	if whole {
+		q.foundWhole(TooClose, "Every possible start %s", from)
+		return
+	}
+	q.found(TooClose, 0, func(n int) string { return sentence("Every possible start in %s %s", blocks(n), from) })
 }
 
 // phase explains a window of orbital phase.

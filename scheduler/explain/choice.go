@@ -11,6 +11,7 @@ type choice struct {
 	pinned   int // options in whose way a pin stands
 
 	net       float64
+	moves     int
 	gain      float64
 	options   []option
 	displaced []*planned
@@ -43,10 +44,16 @@ func (c *choice) consider(gain float64, options ...*option) {
 		}
 	}
 	net := gain - c.q.loss(displaced)
-	if net < c.net || net == c.net && len(displaced) >= len(c.displaced) {
+	moves := len(displaced) // and scans to add: of equal choices, the one that changes least
+	for _, o := range options {
+		if o.had == nil {
+			moves++
+		}
+	}
+	if net < c.net || net == c.net && moves >= c.moves {
 		return
 	}
-	c.net, c.gain, c.displaced = net, gain, displaced
+	c.net, c.gain, c.displaced, c.moves = net, gain, displaced, moves
 	c.options = c.options[:0]
 	for _, o := range options {
 		c.options = append(c.options, *o)

@@ -44,15 +44,16 @@ func (q *question) longestFree(b *feasible.Block) int {
 	if err != nil {
 		return 0 // the planner has sampled the same instants
 	}
+	ignored := almanac.Cause(0)
+	if b.Mount.Kind == scheduler.MountAltAz {
+		ignored = almanac.Mount // the azimuth of whole scans is another question
+	}
 	free := q.freeSteps(b)
 	longest, run := 0, 0
-	for k := range samples {
-		if samples[k].Down != 0 || k == 0 || !free[k-1] {
-			run = 0
-		} else {
+	for k := range free {
+		if free[k] && (samples[k].Down|samples[k+1].Down)&^ignored == 0 {
 			run++
-		}
-		if k > 0 && samples[k-1].Down != 0 {
+		} else {
 			run = 0
 		}
 		longest = max(longest, run)

@@ -109,7 +109,7 @@ func (e *explainer) conflicts(b *feasible.Block, o *option, turnsDeg float64) ([
 	from, to := poses(o.place, o.start, o.steps, turnsDeg)
 	row := e.planned[o.block]
 	first := 0
-	for first < len(row) && row[first].start < o.start {
+	for first < len(row) && row[first].startMin < o.startMin {
 		first++
 	}
 	var list []*planned
@@ -151,11 +151,11 @@ func (q *question) standing() []option {
 	for bi, row := range q.planned {
 		b := &q.Blocks[bi]
 		for _, x := range row {
-			if x.scan.Source != q.source.Name || !q.sees(b, b.Receivers[x.receiver]) {
+			if x.scan.Source != q.source.Name || x.receiver < 0 || !q.sees(b, b.Receivers[x.receiver]) {
 				continue
 			}
 			if bands := q.bandsOf(b, b.Receivers[x.receiver]); bands != 0 {
-				list = append(list, option{block: bi, receiver: x.receiver, bands: bands, start: x.start, steps: x.steps,
+				list = append(list, option{block: bi, receiver: x.receiver, bands: bands, steps: x.scan.Minutes / q.GridMin,
 					startMin: x.startMin, endMin: x.endMin, had: x})
 			}
 		}

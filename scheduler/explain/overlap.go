@@ -30,7 +30,7 @@ func (q *question) overlap() {
 	case len(at) > 0:
 		q.placeTogether(list, at)
 	case close:
-		q.tooClose()
+		q.tooClose(true)
 	case len(list) > 0:
 		q.apart(list, most)
 	}

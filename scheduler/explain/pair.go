@@ -33,7 +33,7 @@ func (q *question) pair() {
 	case best.possible > 0:
 		best.tell()
 	case close:
-		q.tooClose()
+		q.tooClose(true)
 	default:
 		q.farApart(sides)
 	}
@@ -92,7 +92,7 @@ func (q *question) pairUp(sides [2][]offered, lo, hi float64, best *choice, used
 		for _, o := range options {
 			used[o.block] = true
 		}
-		if best.possible++; gain-loss > best.net {
+		if best.possible++; gain-loss >= best.net {
 			best.possible--
 			best.consider(gain, options...)
 		}

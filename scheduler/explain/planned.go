@@ -1,23 +1,25 @@
 package explain
 
 import (
+	"cmp"
 	"math"
 	"slices"
+	"time"
 
+	"cadencewright/astro/sky"
 	"cadencewright/scheduler"
+	"cadencewright/scheduler/almanac"
 	"cadencewright/scheduler/feasible"
 	"cadencewright/scheduler/units"
 )
 
-// planned is a scan of the plan on its block's grid.
+// planned is a scan of the plan in its block.
 type planned struct {
-	scan         *scheduler.Scan
-	block        int // into Problem.Blocks
-	receiver     int // position in Block.Receivers
-	start, steps int
-	startMin     float64
-	endMin       float64
-	from, to     pose // at start and end
+	scan     *scheduler.Scan
+	receiver int // position in Block.Receivers; -1: none of them
+	startMin float64
+	endMin   float64
+	from, to pose // at start and end
 }
 
 // pose is where a mount's axes stand, the azimuth that of the motor.
@@ -38,38 +40,54 @@ func newExplainer(p *feasible.Problem, plan *scheduler.Plan) *explainer {
 	for i := range plan.Scans {
 		s := &plan.Scans[i]
 		if bi, ok := byID[s.Block]; ok {
-			if x := e.place(bi, s); x != nil {
+			if x := e.place(&p.Blocks[bi], s); x != nil {
 				e.planned[bi] = append(e.planned[bi], x)
 				e.book(x)
 			}
 		}
 	}
 	for _, row := range e.planned {
-		slices.SortStableFunc(row, func(a, b *planned) int { return a.start - b.start })
+		slices.SortStableFunc(row, func(a, b *planned) int { return cmp.Compare(a.startMin, b.startMin) })
 	}
 	return e
 }
 
-// place puts a scan on its block's grid; nil where it does not belong there.
-func (e *explainer) place(bi int, s *scheduler.Scan) *planned {
-	b := &e.Blocks[bi]
-	t := &e.Campaign.Telescopes[b.Telescope]
-	x := &planned{scan: s, block: bi, receiver: -1, startMin: units.Minutes(s.Start), endMin: units.Minutes(s.End()),
-		start: int(math.Round((units.Minutes(s.Start) - float64(b.FirstMin)) / float64(e.GridMin))), steps: s.Minutes / e.GridMin}
+// place finds out where the telescope stands at the ends of a scan; nil where
+// the campaign does not have its source. The scan may be of any source and any
+// length, also where the planner has nothing to gain: it takes its time.
+func (e *explainer) place(b *feasible.Block, s *scheduler.Scan) *planned {
+	t, source := &e.Campaign.Telescopes[b.Telescope], e.index.Source(s.Source)
+	if source == nil || s.Minutes <= 0 {
+		return nil
+	}
+	track, err := almanac.Track(t, source, e.Campaign.DUT1S, s.Start, s.End(), time.Duration(e.GridMin)*time.Minute)
+	if err != nil {
+		return nil
+	}
+	x := &planned{scan: s, receiver: -1, startMin: units.Minutes(s.Start), endMin: units.Minutes(s.End())}
 	for j, ri := range b.Receivers {
 		if t.Receivers[ri].Code == s.Receiver {
 			x.receiver = j
 		}
 	}
-	pl := e.placeOf(b, s.Source)
-	if x.receiver < 0 || pl == nil || x.start < pl.Lo || x.start+x.steps >= pl.Lo+len(pl.Axis1) {
-		return nil
+	first, last := track[0], track[len(track)-1]
+	switch t.Mount {
+	case scheduler.MountEquatorial:
+		x.from, x.to = pose{first.HADeg, first.DecDeg}, pose{last.HADeg, last.DecDeg}
+	case scheduler.MountTransit:
+		x.from, x.to = pose{0, first.DecDeg}, pose{0, last.DecDeg}
+	default:
+		az := make([]float64, len(track))
+		for i := range track {
+			az[i] = track[i].AzDeg
+		}
+		az = sky.UnwrapDeg(az, az)
+		turns := 0.0
+		if s.MotorAzDeg != nil {
+			turns = 360 * math.Round((*s.MotorAzDeg-az[0])/360)
+		}
+		x.from, x.to = pose{az[0] + turns, first.ElDeg}, pose{az[len(az)-1] + turns, last.ElDeg}
 	}
-	turns := 0.0
-	if s.MotorAzDeg != nil {
-		turns = 360 * math.Round((*s.MotorAzDeg-pl.Axis1[x.start-pl.Lo])/360)
-	}
-	x.from, x.to = poses(pl, x.start, x.steps, turns)
 	return x
 }
 
@@ -77,16 +95,6 @@ func (e *explainer) place(bi int, s *scheduler.Scan) *planned {
 func poses(pl *feasible.Place, start, steps int, turnsDeg float64) (from, to pose) {
 	i, j := start-pl.Lo, start+steps-pl.Lo
 	return pose{pl.Axis1[i] + turnsDeg, pl.Axis2[i]}, pose{pl.Axis1[j] + turnsDeg, pl.Axis2[j]}
-}
-
-// placeOf is the place of a source in a block by its name, or nil.
-func (e *explainer) placeOf(b *feasible.Block, source string) *feasible.Place {
-	for i := range b.Places {
-		if e.Campaign.Sources[b.Places[i].Source].Name == source {
-			return &b.Places[i]
-		}
-	}
-	return nil
 }
 
 // book notes what a scan earns.

@@ -2,7 +2,6 @@ package sky_test
 
 import (
 	"math"
-	"strings"
 	"testing"
 	"time"
 
@@ -10,64 +9,8 @@ import (
 
 	"cadencewright/astro"
 	"cadencewright/astro/sky"
-	"cadencewright/testdata"
+	"cadencewright/astro/timescale"
 )
-
-// Roots of ERFA's elevation; max(1 s, 60 s x 0.0014 deg / slope), 5 arcsec.
-func TestCrossingsAgainstERFA(t *testing.T) {
-	count := testdata.Watch(t, "riseset: crossings missing or too many", "")
-	at := testdata.Watch(t, "riseset: instants", "s")
-	el := testdata.Watch(t, "riseset: elevation at them", "arcsec")
-	for _, r := range testdata.Table(t, "riseset") {
-		start := r.Time("start_utc")
-		got, vis, err := sky.Crossings(site(r), star(r), r.Num("el_limit_deg"), start, 24*time.Hour, r.Num("dut1_s"))
-		if err != nil {
-			t.Fatal(err)
-		}
-		want := map[bool][]time.Time{true: list(t, r, "up_utc"), false: list(t, r, "down_utc")}
-		switch {
-		case len(want[true])+len(want[false]) > 0:
-			if vis != sky.Crosses {
-				t.Errorf("%s: %s, wanted crossings", r, vis)
-			}
-		case r.Str("above_at_start") == "yes" && vis != sky.AlwaysAbove, r.Str("above_at_start") == "no" && vis != sky.AlwaysBelow:
-			t.Errorf("%s: %s", r, vis)
-		}
-		allowed := math.Max(1, 60*0.0014/math.Max(r.Num("min_slope_deg_per_min"), 1e-9))
-		for _, up := range []bool{true, false} {
-			var mine []time.Time
-			for _, c := range got {
-				if c.Up == up {
-					mine = append(mine, c.At)
-				}
-			}
-			count.Check(r, float64(len(mine)), float64(len(want[up])), 0.5)
-			for i := range min(len(mine), len(want[up])) {
-				at.Check(r, mine[i].Sub(want[up][i]).Seconds(), 0, allowed)
-				p, err := sky.Observe(site(r), star(r), mine[i], r.Num("dut1_s"))
-				if err != nil {
-					t.Fatal(err)
-				}
-				el.Check(r, p.ElDeg*3600, r.Num("el_limit_deg")*3600, 1)
-			}
-		}
-	}
-}
-
-func list(t *testing.T, r testdata.Row, col string) []time.Time {
-	var out []time.Time
-	for cell := range strings.SplitSeq(r.Str(col), ";") {
-		if cell = strings.TrimSpace(cell); cell == "" {
-			continue
-		}
-		at, err := time.Parse(time.RFC3339Nano, cell)
-		if err != nil {
-			t.Fatalf("%s: %v", r, err)
-		}
-		out = append(out, at)
-	}
-	return out
-}
 
 // Between crossings a star stays on one side: brute force over a grid.
 func TestCrossingsSeparateAboveFromBelow(t *testing.T) {
@@ -99,27 +42,155 @@ func TestCrossingsSeparateAboveFromBelow(t *testing.T) {
 	})
 }
 
-func drawSite(t *rapid.T) astro.Geodetic {
-	return astro.Geodetic{
-		Lon:     astro.FromDeg(rapid.Float64Range(-180, 180).Draw(t, "lon")),
-		Lat:     astro.FromDeg(rapid.Float64Range(-89.9, 89.9).Draw(t, "lat")),
-		HeightM: rapid.Float64Range(0, 5000).Draw(t, "height"),
+// At a crossing the elevation is the limit, moving the way it says; ups and
+// downs take turns; two of a kind are a sidereal day apart.
+func TestCrossingsAreCrossings(t *testing.T) {
+	rapid.Check(t, func(t *rapid.T) {
+		site, star, start := drawSite(t), drawStar(t), drawTime(t)
+		limit := rapid.Float64Range(-20, 80).Draw(t, "limit")
+		got, vis, err := sky.Crossings(site, star, limit, start, 50*time.Hour, 0.2)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if (vis == sky.Crosses) != (len(got) > 0) {
+			t.Fatalf("%s with %d crossings", vis, len(got))
+		}
+		for i, c := range got {
+			el := observe(t, site, star, c.At).ElDeg
+			if math.Abs(el-limit)*3600 > 0.05 {
+				t.Errorf("at %s the elevation is %.4f arcsec from the limit", c.At, (el-limit)*3600)
+			}
+			if later := observe(t, site, star, c.At.Add(time.Second)).ElDeg; math.Abs(later-el) > 1e-5 && (later > el) != c.Up {
+				t.Errorf("up is %v at %s, but a second later the elevation has moved by %g deg", c.Up, c.At, later-el)
+			}
+			if i > 0 && c.Up == got[i-1].Up {
+				t.Errorf("two crossings of one kind in a row: %v", got)
+			}
+			if i > 1 {
+				// A second or two is what precession and aberration may move a shallow one by.
+				if gap := c.At.Sub(got[i-2].At) - 86164090*time.Millisecond; gap.Abs() > time.Minute {
+					t.Errorf("crossings of one kind are a sidereal day and %s apart", gap)
+				}
+			}
+		}
+	})
+}
+
+// Twice the same in one day: a star that rises a minute after midnight rises
+// again three minutes before the next.
+func TestTwoOfAKindInADay(t *testing.T) {
+	site := astro.Geodetic{Lon: astro.FromDeg(20), Lat: astro.FromDeg(-31)}
+	star := astro.Star{RA: 1, Dec: -0.3, PosEpochMJD: 51544.5}
+	for _, up := range []bool{true, false} {
+		found, _, err := sky.Crossings(site, star, 20, benchStart, 24*time.Hour, 0)
+		if err != nil {
+			t.Fatal(err)
+		}
+		var first time.Time
+		for _, c := range found {
+			if c.Up == up {
+				first = c.At
+			}
+		}
+		start := first.Add(-time.Minute)
+		again, vis, err := sky.Crossings(site, star, 20, start, 24*time.Hour, 0)
+		if err != nil || vis != sky.Crosses || len(again) != 3 {
+			t.Fatalf("up %v: %d crossings, %s, %v; want 3", up, len(again), vis, err)
+		}
+		if again[0].Up != up || again[1].Up == up || again[2].Up != up {
+			t.Errorf("up %v: %v", up, again)
+		}
+		if gap := again[2].At.Sub(again[0].At); (gap - 86164090*time.Millisecond).Abs() > 20*time.Millisecond {
+			t.Errorf("up %v: a sidereal day is %s", up, gap)
+		}
 	}
 }
 
-func drawStar(t *rapid.T) astro.Star {
-	return astro.Star{
-		RA:          astro.FromDeg(rapid.Float64Range(0, 360).Draw(t, "ra")),
-		Dec:         astro.FromDeg(rapid.Float64Range(-89.9, 89.9).Draw(t, "dec")),
-		PosEpochMJD: 55000,
-		PMRAMasYr:   rapid.Float64Range(-200, 200).Draw(t, "pmra"),
-		PMDecMasYr:  rapid.Float64Range(-200, 200).Draw(t, "pmdec"),
+// A span that begins or ends on a crossing has it once: at the start, not at
+// the end.
+func TestCrossingsAtTheEndsOfASpan(t *testing.T) {
+	found, _, err := sky.Crossings(benchSite, benchStar, 20, benchStart, 48*time.Hour, 0)
+	if err != nil || len(found) < 3 {
+		t.Fatal(found, err)
+	}
+	const slack = 2 * time.Millisecond
+	for _, c := range found {
+		for name, s := range map[string]struct {
+			start time.Time
+			span  time.Duration
+			want  int
+		}{
+			"from a moment before": {c.At.Add(-slack), time.Hour, 1},
+			"from a moment after":  {c.At.Add(slack), time.Hour, 0},
+			"to a moment after":    {c.At.Add(-time.Hour), time.Hour + slack, 1},
+			"to a moment before":   {c.At.Add(-time.Hour), time.Hour - slack, 0},
+		} {
+			got, _, err := sky.Crossings(benchSite, benchStar, 20, s.start, s.span, 0)
+			if err != nil || len(got) != s.want {
+				t.Errorf("%s %s: %d crossings, %v; want %d", name, c.At, len(got), err, s.want)
+			}
+		}
 	}
 }
 
-func drawTime(t *rapid.T) time.Time {
-	base := time.Date(2026, 1, 1, 0, 0, 0, 0, time.UTC)
-	return base.Add(time.Duration(rapid.Int64Range(0, 5*365*86400).Draw(t, "second")) * time.Second)
+// A star that only grazes the limit: the two crossings are close together and
+// the top lies between them; a little higher there is none.
+func TestGrazing(t *testing.T) {
+	at, top, err := sky.UpperTransit(benchSite, benchStar, benchStart, 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, below := range []float64{1, 0.1, 0.01, 0.001} {
+		got, vis, err := sky.Crossings(benchSite, benchStar, top-below, benchStart, 23*time.Hour, 0)
+		if err != nil || vis != sky.Crosses || len(got) != 2 {
+			t.Fatalf("%g deg below the top: %d crossings, %s, %v", below, len(got), vis, err)
+		}
+		if !got[0].Up || got[1].Up || got[0].At.After(at) || got[1].At.Before(at) {
+			t.Errorf("%g deg below the top, which is at %s: %v", below, at, got)
+		}
+	}
+	for _, above := range []float64{0.001, 0.1} {
+		got, vis, err := sky.Crossings(benchSite, benchStar, top+above, benchStart, 23*time.Hour, 0)
+		if err != nil || vis != sky.AlwaysBelow || len(got) != 0 {
+			t.Errorf("%g deg above the top: %v, %s, %v", above, got, vis, err)
+		}
+	}
+}
+
+// Stars that never cross, the poles of the Earth and of the sky among them.
+func TestNoCrossings(t *testing.T) {
+	for _, c := range []struct {
+		name            string
+		lat, dec, limit float64
+		want            sky.Visibility
+	}{
+		{"circumpolar", 60, 70, 20, sky.AlwaysAbove},
+		{"never rises", 60, -70, 20, sky.AlwaysBelow},
+		{"at the Earth's pole, above", 90, 30, 20, sky.AlwaysAbove},
+		{"at the Earth's pole, below", 90, 10, 20, sky.AlwaysBelow},
+		{"at the Earth's south pole", -90, -30, 20, sky.AlwaysAbove},
+		{"the pole of the sky", 40, 90, 39, sky.AlwaysAbove},
+		{"the pole of the sky, below", 40, 90, 41, sky.AlwaysBelow},
+		{"a limit at the nadir", 40, 20, -90, sky.AlwaysAbove},
+		{"a limit at the zenith", 40, 20, 90, sky.AlwaysBelow},
+	} {
+		site := astro.Geodetic{Lat: astro.FromDeg(c.lat)}
+		star := astro.Star{RA: 2, Dec: astro.FromDeg(c.dec), PosEpochMJD: 51544.5}
+		got, vis, err := sky.Crossings(site, star, c.limit, benchStart, 24*time.Hour, 0)
+		if err != nil || vis != c.want || len(got) != 0 {
+			t.Errorf("%s: %v, %s, %v; want %s", c.name, got, vis, err, c.want)
+		}
+	}
+}
+
+// The first and the last day that can be used have their crossings too.
+func TestCrossingsAtTheEndsOfTheDates(t *testing.T) {
+	for _, start := range []time.Time{timescale.First, timescale.Last.Add(-24 * time.Hour)} {
+		got, vis, err := sky.Crossings(benchSite, benchStar, 20, start, 24*time.Hour, 0)
+		if err != nil || vis != sky.Crosses || len(got) < 2 {
+			t.Errorf("from %s: %v, %s, %v", start, got, vis, err)
+		}
+	}
 }
 
 func TestUpperTransit(t *testing.T) {

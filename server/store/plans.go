@@ -186,3 +186,13 @@ func (s *Store) Plan(ctx context.Context, id int64) (PlanInfo, *scheduler.Plan, 
 	}
 	return info, p, scans, err
 }
+
+// PlanFacts is what is known of a plan, without its content.
+func (s *Store) PlanFacts(ctx context.Context, id int64) (PlanInfo, error) {
+	rows, err := s.pool.Query(ctx, qPlan, id)
+	if err != nil {
+		return PlanInfo{}, fault("plan", err)
+	}
+	info, err := pgx.CollectExactlyOneRow(rows, scanPlanInfo)
+	return info, classify(err)
+}

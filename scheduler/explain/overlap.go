@@ -91,7 +91,7 @@ func (q *question) commonStarts(list []reach, lo, hi float64) (at []float64, mos
 // placeTogether weighs the common times at which the unit could be served.
 func (q *question) placeTogether(list []reach, at []float64) {
 	const samples = 48
-	best := q.newChoice()
+	best, close := q.newChoice(), false
 	blocks := map[int]bool{}
 	for i := 0; i < len(at); i += 1 + len(at)/samples {
 		for bit := uint32(1); bit <= q.allBands(); bit <<= 1 {
@@ -105,13 +105,22 @@ func (q *question) placeTogether(list []reach, at []float64) {
 				blocks[o.block] = true
 				start = max(start, o.startMin)
 			}
-			if gain := q.unit.Weight * q.unit.Timeliness(start); gain > 0 && q.spaced(start) {
+			gain := q.unit.Weight * q.unit.Timeliness(start)
+			if gain > 0 && q.spaced(start) {
 				best.consider(gain, chosen...)
 			}
+			close = close || !q.spaced(start)
 		}
 	}
 	best.blocks = len(blocks)
-	best.tell()
+	switch {
+	case best.possible > 0:
+		best.tell()
+	case close:
+		q.tooClose(true)
+	default:
+		q.foundWhole(Displaced, "Enough telescopes could observe it together, but pinned scans stand in the way at every common start.")
+	}
 }
 
 // cheapest is for every telescope the option that is under way in a band from

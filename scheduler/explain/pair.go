@@ -35,7 +35,7 @@ func (q *question) pair() {
 	case close:
 		q.tooClose(true)
 	default:
-		q.farApart(sides)
+		q.farApart(sides, lo, hi)
 	}
 }
 
@@ -128,8 +128,12 @@ func (q *question) compatible(a, b *option) bool {
 	return roomFor(&q.Blocks[a.block], from, to, a.receiver != b.receiver, (b.startMin-a.endMin)*60)
 }
 
-// oneBand notes that only one of the two bands can be observed at all.
+// oneBand notes that one of the two bands cannot be observed at all, or only
+// where pins stand.
 func (q *question) oneBand(counts [2]int) {
+	if counts[0] > 0 && counts[1] > 0 {
+		q.foundWhole(Displaced, "Both bands could be observed, but pinned scans stand in the way at every possible start of one of them.")
+	}
 	for i := range counts {
 		if counts[i] > 0 && counts[1-i] == 0 {
 			q.foundWhole(NoPair, "%s can be observed in %s, %s in none.", q.wants.Bands[i], blocks(counts[i]), q.wants.Bands[1-i])
@@ -137,24 +141,31 @@ func (q *question) oneBand(counts [2]int) {
 	}
 }
 
-// farApart notes how near to each other the two bands can be observed.
-func (q *question) farApart(sides [2][]offered) {
+// farApart notes how near to each other the two bands can be observed, or where
+// only one of two scans has room.
+func (q *question) farApart(sides [2][]offered, lo, hi float64) {
 	nearest, a, b := math.Inf(1), &option{}, &option{}
 	for i := range sides[0] {
 		for j := range sides[1] {
 			x, y := &sides[0][i].option, &sides[1][j].option
-			if apart := math.Abs(x.startMin - y.startMin); apart < nearest && q.compatible(x, y) {
+			apart, later := math.Abs(x.startMin-y.startMin), max(x.startMin, y.startMin)
+			if !q.compatible(x, y) {
+				if apart <= q.goal.WithinMin && later >= lo && later <= hi {
+					q.foundWhole(NoPair, "%s and %s can be observed near each other only in %s, which has no time for both.",
+						q.wants.Bands[0], q.wants.Bands[1], block(q, &q.Blocks[x.block]))
+					return
+				}
+				continue
+			}
+			if apart < nearest {
 				nearest, a, b = apart, x, y
 			}
 		}
 	}
-	switch {
-	case math.IsInf(nearest, 1):
-		q.foundWhole(NoPair, "%s and %s can be observed only at the same time at the same telescope.", q.wants.Bands[0], q.wants.Bands[1])
-	case nearest <= q.goal.WithinMin:
+	if nearest <= q.goal.WithinMin || math.IsInf(nearest, 1) {
 		q.foundWhole(NoPair, "Both bands can be observed near each other only outside the time in which it counts.")
-	default:
-		q.foundWhole(NoPair, "The nearest starts in the two bands are %s apart (%s: %s; %s: %s); %s are allowed.", span(nearest),
-			q.wants.Bands[0], q.titled(a), q.wants.Bands[1], q.titled(b), span(q.goal.WithinMin))
+		return
 	}
+	q.foundWhole(NoPair, "The nearest starts in the two bands are %s apart (%s: %s; %s: %s); %s are allowed.", span(nearest),
+		q.wants.Bands[0], q.titled(a), q.wants.Bands[1], q.titled(b), span(q.goal.WithinMin))
 }

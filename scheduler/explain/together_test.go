@@ -89,7 +89,7 @@ func TestWhyAPairIsUnmet(t *testing.T) {
 				"S: TWO with S in block b2 from 2027-01-18 11:15 UTC", "3.0 h are allowed"}},
 		{"time for one scan only", func(c *scheduler.Campaign, _ *scheduler.BandPairGoal) {
 			c.Blocks[0].Receivers, c.Blocks[0].End = []string{"L", "S"}, after(0.6)
-		}, nil, NoPair, 0, []string{"only at the same time at the same telescope"}},
+		}, nil, NoPair, 0, []string{"L and S can be observed near each other only in block b1 of ONE, which has no time for both"}},
 		{"another scan in the way", func(c *scheduler.Campaign, _ *scheduler.BandPairGoal) {
 			c.Blocks[0].End = after(1.2)
 			addBlock(c, "b2", "TWO", 1, 3, "S")
@@ -144,4 +144,28 @@ func TestNeighbouringWindowsOfPairsAndOverlaps(t *testing.T) {
 		}
 		says(t, list[0], TooClose, 0, "half of the interval (2.00 d)", "2027-01-21 08:15 UTC")
 	}
+}
+
+// Pins stand in the way of everything at a telescope that moves too slowly.
+func TestPinsInTheWayOfBoth(t *testing.T) {
+	c := lone()
+	wantPair(c)
+	wantOverlap(c)
+	c.Blocks[0].End = after(1.1)
+	c.Telescopes[0].RateAzDegS = 0.001
+	c.Sources[0].ScanMinutes = []int{15}
+	c.OverlapGoals[0].OverlapMin = 15
+	addBlock(c, "b2", "TWO", 0, 3, "L", "S")
+	c.OverlapGoals[0].Bands = []string{"L"}
+	c.BandPairGoals[0].Telescopes = []string{"ONE", "TWO"}
+	c.Blocks[0].Receivers, c.Blocks[1].Receivers = []string{"L"}, []string{"L", "S"}
+	c.Pins = []scheduler.Pin{{Block: "b1", Source: other, Receiver: "L", Start: after(0.25), Minutes: 20}}
+	pin := observed(other, "b1", 0.25, 20)
+	pin.Pinned = true
+	list := explained(t, c, "two#1", pin)
+	says(t, list[0], Displaced, 0, "pinned scans stand in the way at every common start")
+
+	c.Blocks[1].Receivers = []string{"S"}
+	list = explained(t, c, "duo#1", pin)
+	says(t, list[0], Displaced, 0, "pinned scans stand in the way at every possible start of one of them")
 }

@@ -34,7 +34,8 @@ const maxCrossingSpan = 400 * 24 * time.Hour
 // above or below where it never does. Hour angle of the limit in closed form
 // (Meeus, chapter 15), then the place is worked out anew at the instant found
 // until that moves by less than a millisecond; a shallow pass needs no slope
-// and loses nothing.
+// and loses nothing. Instants are those of the careful place to 0.1 ms, which is
+// also how sharp the ends of the span are.
 func Crossings(site astro.Geodetic, star astro.Star, elLimitDeg float64, start time.Time, span time.Duration, dut1S float64) ([]Crossing, Visibility, error) {
 	if span <= 0 || span > maxCrossingSpan {
 		return nil, "", &astro.RangeError{Quantity: "span", Value: span.String(), Allowed: "above 0 to " + maxCrossingSpan.String()}
@@ -71,49 +72,75 @@ type crossing struct {
 }
 
 // hourAngleOf is the hour angle at which a declination reaches the limit, in
-// [0, π]; false where it never does.
+// [0, π]; where it never does, false and the end that comes nearest to it.
 func (c *crossing) hourAngleOf(dec astro.Angle) (astro.Angle, bool) {
 	cosH := (c.sinEl - c.site.Lat.Sin()*dec.Sin()) / (c.site.Lat.Cos() * dec.Cos())
-	if !(cosH >= -1 && cosH <= 1) {
+	switch {
+	case cosH > 1: // stays below: the top is nearest
+		return 0, false
+	case cosH < -1: // stays above
+		return math.Pi, false
+	case math.IsNaN(cosH): // at the Earth's pole, the limit being the star's declination
 		return 0, false
 	}
 	return astro.Angle(math.Acos(cosH)), true
 }
 
-// between finds the crossings in [start, end). One sidereal day before the
-// start is searched too: a crossing just after it may seem to lie before it by
-// the place a day earlier.
+// between finds the crossings in [start, end), in the order of time.
 func (c *crossing) between(start, end time.Time) ([]Crossing, error) {
 	var found []Crossing
-	for t := start.Add(-siderealDay); t.Before(end); t = t.Add(siderealDay) {
+	for _, up := range []bool{true, false} {
+		if err := c.chain(start, end, up, &found); err != nil {
+			return nil, err
+		}
+	}
+	slices.SortFunc(found, func(a, b Crossing) int { return a.At.Compare(b.At) })
+	return found, nil
+}
+
+// maxShift bounds how much earlier than a sidereal day after the last a
+// crossing can come. Only one that grazes the limit moves by more than a second.
+const maxShift = time.Hour
+
+// chain follows the crossings of one kind from each to the next, about a
+// sidereal day later. Day by day from a fixed instant would not do: a crossing
+// just after one such instant can come back just before the next.
+func (c *crossing) chain(start, end time.Time, up bool, found *[]Crossing) error {
+	wait, _, err := c.wait(start, up)
+	if err != nil {
+		return err
+	}
+	if wait > 0 {
+		wait -= siderealDay
+	}
+	for t := start.Add(wait); t.Before(end.Add(maxShift)) && t.Before(timescale.Last); t = t.Add(siderealDay) {
 		if t.Before(timescale.First) {
 			continue
 		}
-		for _, up := range []bool{true, false} {
-			at, ok, err := c.near(t, up)
-			if err != nil {
-				return nil, err
-			}
-			if ok && !at.Before(start) && at.Before(end) {
-				found = append(found, Crossing{At: at, Up: up})
-			}
+		at, ok, err := c.near(t, up)
+		if err != nil {
+			return err
+		}
+		if !ok {
+			continue // it may graze the limit tomorrow
+		}
+		t = at
+		if !at.Before(start) && at.Before(end) {
+			*found = append(*found, Crossing{At: at, Up: up})
 		}
 	}
-	// Two days may both have found a crossing at their common end.
-	slices.SortFunc(found, func(a, b Crossing) int { return a.At.Compare(b.At) })
-	return slices.CompactFunc(found, func(a, b Crossing) bool { return a.Up == b.Up && b.At.Sub(a.At) < time.Minute }), nil
+	return nil
 }
 
-// near is the crossing in the sidereal day that begins at t, or a little
-// outside it; none where that day runs out of the dates that can be used.
+// near is the crossing nearest to t; none where that is not within the dates
+// that can be used.
 func (c *crossing) near(t time.Time, up bool) (time.Time, bool, error) {
-	first := true
 	for range 8 {
-		wait, ok, err := c.wait(t, up, first)
+		wait, ok, err := c.wait(t, up)
 		if err != nil || !ok {
 			return t, false, err
 		}
-		t, first = t.Add(wait), false
+		t = t.Add(wait)
 		if t.Before(timescale.First) || !t.Before(timescale.Last) {
 			return t, false, nil
 		}
@@ -124,9 +151,9 @@ func (c *crossing) near(t time.Time, up bool) (time.Time, bool, error) {
 	return t, true, nil
 }
 
-// wait is how long after t the crossing is by the place at t: within a
-// sidereal day ahead the first time, the shortest way afterwards.
-func (c *crossing) wait(t time.Time, up, ahead bool) (time.Duration, bool, error) {
+// wait is how long after t the nearest crossing is by the place at t, before it
+// where negative; false where the star does not reach the limit.
+func (c *crossing) wait(t time.Time, up bool) (time.Duration, bool, error) {
 	tt, err := timescale.TT(t)
 	if err != nil {
 		return 0, false, err
@@ -138,17 +165,11 @@ func (c *crossing) wait(t time.Time, up, ahead bool) (time.Duration, bool, error
 	f := newFrame(tt)
 	d := f.apparent(c.star)
 	h, ok := c.hourAngleOf(d.Lat())
-	if !ok {
-		return 0, false, nil
-	}
 	if up {
 		h = -h
 	}
 	turn := (d.Lon() + h - lst).WrapSigned()
-	if ahead {
-		turn = turn.Wrap()
-	}
-	return time.Duration(turn.Rad() / (2 * math.Pi) * float64(siderealDay)), true, nil
+	return time.Duration(turn.Rad() / (2 * math.Pi) * float64(siderealDay)), ok, nil
 }
 
 // UpperTransit is the first instant from t on at which the star passes the

@@ -133,6 +133,38 @@ func TestCrossingsAtTheEndsOfASpan(t *testing.T) {
 	}
 }
 
+// Wherever the days of a search begin, it finds each crossing once: the days'
+// common ends are put on and about a crossing that shifts from day to day.
+func TestCrossingsAreFoundOnce(t *testing.T) {
+	at, top, err := sky.UpperTransit(benchSite, benchStar, benchStart, 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	const days = 60
+	all, _, err := sky.Crossings(benchSite, benchStar, top-0.02, at.Add(-12*time.Hour), (days+20)*24*time.Hour, 0)
+	if err != nil || len(all) < 2*days {
+		t.Fatalf("%d crossings, %v", len(all), err)
+	}
+	for i := 2; i < 12; i++ {
+		for _, offset := range []time.Duration{-30 * time.Second, -time.Second, -30 * time.Millisecond, 30 * time.Millisecond, time.Second, 30 * time.Second} {
+			start := all[i].At.Add(offset)
+			got, _, err := sky.Crossings(benchSite, benchStar, top-0.02, start, days*24*time.Hour, 0)
+			if err != nil {
+				t.Fatal(err)
+			}
+			want := 0
+			for _, c := range all {
+				if !c.At.Before(start) && c.At.Before(start.Add(days*24*time.Hour)) {
+					want++
+				}
+			}
+			if len(got) != want {
+				t.Errorf("crossing %d and %s: %d found, want %d", i, offset, len(got), want)
+			}
+		}
+	}
+}
+
 // A star that only grazes the limit: the two crossings are close together and
 // the top lies between them; a little higher there is none.
 func TestGrazing(t *testing.T) {

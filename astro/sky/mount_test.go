@@ -51,6 +51,8 @@ func TestMotorTurns(t *testing.T) {
 		{350, 370, [2]float64{0, 360}, [2]int{0, -1}}, // through north, no overlap
 		{350, 370, [2]float64{-90, 450}, [2]int{-1, 0}},
 		{0, 360, [2]float64{0, 360}, [2]int{0, 0}},
+		{620, 629.7, [2]float64{-270, 269.7}, [2]int{-2, -1}}, // a turn back it touches the end; (269.7-629.7)/360 rounds to below -1
+		{-541.7, -500, [2]float64{-181.7, 0}, [2]int{1, 1}},   // and the other end
 	} {
 		lo, hi := sky.MotorTurns(c.lo, c.hi, c.limits)
 		if lo != c.want[0] || hi != c.want[1] {

@@ -36,16 +36,13 @@ type Place struct {
 type frame struct {
 	trueOfDate astro.Mat3
 	velocity   astro.Vec3 // of the Earth, in units of c, ICRS
-	invGamma   float64    // sqrt(1 - v²)
 	tdb        float64    // MJD, for proper motion
 }
 
 // newFrame works out the frame at a Terrestrial Time.
 func newFrame(tt timescale.MJD) frame {
 	jde := tt.JD()
-	f := frame{trueOfDate: meeus.TrueOfDate(jde), velocity: meeus.EarthVelocity(jde), tdb: tt.Float()}
-	f.invGamma = math.Sqrt(1 - f.velocity.Dot(f.velocity))
-	return f
+	return frame{trueOfDate: meeus.TrueOfDate(jde), velocity: meeus.EarthVelocity(jde), tdb: tt.Float()}
 }
 
 // apparentSun is the direction of the apparent Sun at a Terrestrial Time near
@@ -55,12 +52,13 @@ func (f *frame) apparentSun(tt timescale.MJD) astro.Vec3 {
 	return f.trueOfDate.Apply(f.aberrate(meeus.EarthHeliocentric(tt.JD()).Scale(-1).Unit()))
 }
 
-// aberrate moves a geometric direction by annual aberration (the relativistic
-// formula to first order in the product of velocity and direction; Explanatory
-// Supplement, 3rd ed., section 7.2.3.3).
+// aberrate moves a geometric direction by annual aberration, to the second
+// order in velocity (0.001 arcsec; Explanatory Supplement, 3rd ed., section
+// 7.2.3.3, from memory). The factor sqrt(1 - v²) would move nothing by more than
+// 1e-7 arcsec.
 func (f *frame) aberrate(p astro.Vec3) astro.Vec3 {
 	dot := p.Dot(f.velocity)
-	return p.Scale(f.invGamma).Add(f.velocity.Scale(1 + dot/2)).Unit()
+	return p.Add(f.velocity.Scale(1 + dot/2)).Unit()
 }
 
 // apparent is the star's apparent direction, true equator and equinox of date.

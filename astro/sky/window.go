@@ -55,6 +55,9 @@ func NewWindow(site astro.Geodetic, start time.Time, step time.Duration, n int, 
 	// last sample: it may be the last instant that can be used.
 	last := max(1, n-1)
 	intervals := min(last, intervalsOf(time.Duration(n-1)*step, knotSpan))
+	if step > sunSpan {
+		intervals = last // a knot for each sample, nothing in between
+	}
 	w := &Window{n: n, perKnot: float64(last) / float64(intervals)}
 	w.sinPhi, w.cosPhi = math.Sincos(float64(site.Lat))
 	at := func(sample float64) time.Time {
@@ -103,8 +106,10 @@ func (w *Window) place(site astro.Geodetic, dut1S float64, intervals int, at fun
 
 // placeSuns works out the Sun some times in each interval between knots.
 func (w *Window) placeSuns(step time.Duration, at func(float64) time.Time) error {
-	interval := time.Duration(w.perKnot * float64(step))
-	w.sunsPerKnot = min(intervalsOf(interval, sunSpan), int(math.Ceil(w.perKnot)))
+	w.sunsPerKnot = 1
+	if step <= sunSpan {
+		w.sunsPerKnot = intervalsOf(time.Duration(w.perKnot*float64(step)), sunSpan)
+	}
 	each := w.perKnot / float64(w.sunsPerKnot)
 	w.suns = make([]astro.Vec3, (len(w.knots)-1)*w.sunsPerKnot+1)
 	for j := range w.suns {

@@ -10,6 +10,7 @@ import (
 	"time"
 
 	"cadencewright/scheduler"
+	"cadencewright/scheduler/explain"
 	"cadencewright/scheduler/feasible"
 	"cadencewright/scheduler/solve"
 	"cadencewright/scheduler/verify"
@@ -98,6 +99,7 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 	if err != nil {
 		return err
 	}
+	result.Plan.Unmet = explain.Unmet(problem, result.Plan)
 	if err := soundPlan(c, result.Plan); err != nil {
 		return err
 	}

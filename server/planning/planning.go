@@ -12,6 +12,7 @@ import (
 	"time"
 
 	"cadencewright/scheduler"
+	"cadencewright/scheduler/explain"
 	"cadencewright/scheduler/feasible"
 	"cadencewright/scheduler/solve"
 	"cadencewright/scheduler/verify"
@@ -32,8 +33,6 @@ type Planner struct {
 	Store   Store
 	Effort  int64 // thousands of transitions; 0: the solver's own
 	Workers int
-	// Explain fills in why each unmet unit is unmet.
-	Explain func(*feasible.Problem, *scheduler.Plan)
 }
 
 // heartbeat is how often a job that runs notes its progress.
@@ -75,9 +74,7 @@ func (p *Planner) make(ctx context.Context, job store.PlanJob) (*scheduler.Plan,
 	if err != nil {
 		return nil, store.PlanMeta{}, err
 	}
-	if p.Explain != nil {
-		p.Explain(problem, result.Plan)
-	}
+	result.Plan.Unmet = explain.Unmet(problem, result.Plan)
 	if err := recheck(c, result.Plan); err != nil {
 		return nil, store.PlanMeta{}, err
 	}

@@ -117,6 +117,9 @@ type PhaseRange struct {
 	To        float64 `json:"to"`
 }
 
+// Zone is the telescope's time zone.
+func (s *Sheet) Zone() *time.Location { return s.zone }
+
 // Local is an instant in the telescope's zone.
 func (s *Sheet) Local(t time.Time) time.Time { return t.In(s.zone) }
 

@@ -101,7 +101,7 @@ func (a *API) report(ctx context.Context, in *reportInput) (*scanOutput, error) 
 		if err != nil {
 			return nil, fail(err)
 		}
-		if !id.Telescope(x.Telescope) {
+		if !id.MayReport(x.Telescope) {
 			return nil, fail(scheduler.Errorf(scheduler.ErrForbidden, "%s may not report for telescope %s", id.Name, x.Telescope))
 		}
 	}

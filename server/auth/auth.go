@@ -24,12 +24,26 @@ const (
 	RoleKey         Role = "key"
 )
 
+// Roles are all there are, nobody's first.
+var Roles = []Role{RoleNone, RoleReader, RoleObserver, RoleCoordinator, RoleKey}
+
+// String is the role in a sentence.
+func (r Role) String() string {
+	switch r {
+	case RoleNone:
+		return "somebody who has not signed in"
+	case RoleKey:
+		return "control script's key"
+	}
+	return string(r)
+}
+
 // Identity is who asks.
 type Identity struct {
 	Name       string
 	Role       Role
-	Telescopes []string // of an observer or a key; empty for an observer: all
-	PersonID   int64
+	Telescopes []string // those that an observer, or a key, may report for
+	PersonID   int64    // 0: a key, or nobody
 }
 
 // Actor is the name that the journal notes.
@@ -40,17 +54,23 @@ func (id Identity) Actor() string {
 	return id.Name
 }
 
-// Telescope tells whether the identity may report for a telescope.
-func (id Identity) Telescope(code string) bool {
+// MayReport tells whether the identity may report for a telescope: a
+// coordinator for all, an observer and a key for those that they are named
+// for.
+func (id Identity) MayReport(telescope string) bool {
 	switch id.Role {
 	case RoleCoordinator:
 		return true
-	case RoleKey:
-		return slices.Contains(id.Telescopes, code)
-	case RoleObserver:
-		return len(id.Telescopes) == 0 || slices.Contains(id.Telescopes, code)
+	case RoleKey, RoleObserver:
+		return slices.Contains(id.Telescopes, telescope)
 	}
 	return false
+}
+
+// MaySee tells whether the identity may look at what is a telescope's: a key
+// at its own alone, people at all.
+func (id Identity) MaySee(telescope string) bool {
+	return id.Role != RoleKey || slices.Contains(id.Telescopes, telescope)
 }
 
 type contextKey struct{}
@@ -85,121 +105,43 @@ type Auth struct {
 	secure bool // cookies over https only
 }
 
-// New makes an Auth; secure says that people come over https.
+// New makes an Auth; secure says that cookies go over https only.
 func New(s Store, secure bool) *Auth { return &Auth{s, secure} }
 
-const cookieName = "cadencewright_session"
-
 // Identify finds out who a request is from: a bearer key, else a session's
-// cookie. Nobody is no error; a key that is wrong is.
+// cookie. Nobody is no error; a key that is wrong is. Credentials of another
+// scheme are somebody else's, such as a proxy's, and are passed over.
 func (a *Auth) Identify(r *http.Request) (Identity, error) {
-	if h := r.Header.Get("Authorization"); h != "" {
-		token, ok := strings.CutPrefix(h, "Bearer ")
-		if !ok {
-			return Identity{}, scheduler.Errorf(scheduler.ErrUnauthenticated, "send the key as: Authorization: Bearer KEY")
-		}
-		k, err := a.store.KeyByHash(r.Context(), HashToken(strings.TrimSpace(token)))
+	if token, ok := bearer(r); ok {
+		k, err := a.store.KeyByHash(r.Context(), HashToken(token))
 		if errors.Is(err, scheduler.ErrNotFound) {
 			return Identity{}, scheduler.Errorf(scheduler.ErrUnauthenticated, "this key is unknown or has been revoked")
 		}
-		return Identity{Name: k.Name, Role: RoleKey, Telescopes: []string{k.Telescope}}, err
+		if err != nil {
+			return Identity{}, err
+		}
+		return Identity{Name: k.Name, Role: RoleKey, Telescopes: []string{k.Telescope}}, nil
 	}
-	c, err := r.Cookie(cookieName)
+	c, err := r.Cookie(CookieName)
 	if err != nil || c.Value == "" {
 		return Identity{}, nil
 	}
 	p, err := a.store.SessionPerson(r.Context(), HashToken(c.Value))
-	if errors.Is(err, scheduler.ErrNotFound) {
+	if errors.Is(err, scheduler.ErrNotFound) { // ended: nobody
 		return Identity{}, nil
 	}
-	return identityOf(p), err
+	if err != nil {
+		return Identity{}, err
+	}
+	return identityOf(p), nil
+}
+
+// bearer is the key that a request carries.
+func bearer(r *http.Request) (string, bool) {
+	scheme, token, _ := strings.Cut(r.Header.Get("Authorization"), " ")
+	return strings.TrimSpace(token), strings.EqualFold(scheme, "Bearer")
 }
 
 func identityOf(p store.Person) Identity {
 	return Identity{Name: p.Name, Role: Role(p.Role), Telescopes: p.Telescopes, PersonID: p.ID}
-}
-
-// How many wrong passwords a name, and an address, may give in a while.
-const (
-	failuresWithin  = 15 * time.Minute
-	failuresPerName = 10
-	failuresPerAddr = 50
-)
-
-// SignIn checks a name and password and begins a session.
-func (a *Auth) SignIn(ctx context.Context, w http.ResponseWriter, name, password, addr string) (Identity, error) {
-	byName, byAddr := "name "+strings.ToLower(name), "addr "+addr
-	for subject, limit := range map[string]int{byName: failuresPerName, byAddr: failuresPerAddr} {
-		n, err := a.store.Failures(ctx, subject, failuresWithin)
-		if err != nil {
-			return Identity{}, err
-		}
-		if n >= limit {
-			return Identity{}, scheduler.Errorf(scheduler.ErrTooMany, "too many wrong passwords; wait %d minutes", int(failuresWithin.Minutes()))
-		}
-	}
-	p, err := a.store.PersonByName(ctx, name)
-	hash := absent
-	switch {
-	case err == nil && p.PasswordHash != nil && !p.Disabled:
-		hash = *p.PasswordHash
-	case err != nil && !errors.Is(err, scheduler.ErrNotFound):
-		return Identity{}, err
-	}
-	ok, err := CheckPassword(hash, password)
-	if err != nil {
-		return Identity{}, err
-	}
-	if !ok || hash == absent {
-		for _, subject := range []string{byName, byAddr} {
-			if err := a.store.NoteFailure(ctx, subject); err != nil {
-				return Identity{}, err
-			}
-		}
-		return Identity{}, scheduler.Errorf(scheduler.ErrUnauthenticated, "name and password do not fit")
-	}
-	return identityOf(p), a.begin(ctx, w, p.ID)
-}
-
-// SignInByLink uses up a one-time link and begins a session.
-func (a *Auth) SignInByLink(ctx context.Context, w http.ResponseWriter, token string) (Identity, error) {
-	p, err := a.store.UseLink(ctx, HashToken(token))
-	if errors.Is(err, scheduler.ErrNotFound) {
-		return Identity{}, scheduler.Errorf(scheduler.ErrUnauthenticated, "this link is unknown, has been used or is too old; ask for another")
-	}
-	if err != nil {
-		return Identity{}, err
-	}
-	return identityOf(p), a.begin(ctx, w, p.ID)
-}
-
-// begin makes a session and its cookie.
-func (a *Auth) begin(ctx context.Context, w http.ResponseWriter, person int64) error {
-	token, hash := NewToken()
-	if err := a.store.AddSession(ctx, hash, person); err != nil {
-		return err
-	}
-	http.SetCookie(w, a.cookie(token, 30*24*3600))
-	return nil
-}
-
-func (a *Auth) cookie(value string, age int) *http.Cookie {
-	return &http.Cookie{Name: cookieName, Value: value, Path: "/", MaxAge: age, HttpOnly: true, Secure: a.secure, SameSite: http.SameSiteLaxMode}
-}
-
-// SignOut ends the session of a request.
-func (a *Auth) SignOut(w http.ResponseWriter, r *http.Request) error {
-	if c, err := r.Cookie(cookieName); err == nil {
-		if err := a.store.EndSession(r.Context(), HashToken(c.Value)); err != nil {
-			return err
-		}
-	}
-	http.SetCookie(w, a.cookie("", -1))
-	return nil
-}
-
-// Link makes a one-time link's token for a person.
-func (a *Auth) Link(ctx context.Context, person int64, life time.Duration) (string, error) {
-	token, hash := NewToken()
-	return token, a.store.AddLink(ctx, hash, person, life)
 }

@@ -4,6 +4,7 @@ import (
 	"math"
 	"os"
 	"slices"
+	"sync"
 	"testing"
 
 	"cadencewright/scheduler"
@@ -14,33 +15,59 @@ import (
 	"cadencewright/testdata"
 )
 
-// problemOf is one of the repository's campaigns over its own horizon.
+// problemOf is one of the repository's campaigns over its own horizon. It is
+// built once for all tests, which only read it.
 func problemOf(t testing.TB, name string) *feasible.Problem {
 	t.Helper()
-	data, err := os.ReadFile(testdata.Path("campaigns", name+".json"))
-	if err != nil {
-		t.Fatal(err)
-	}
-	c, err := scheduler.ReadCampaign(data)
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := feasible.Build(c, scheduler.Horizon{From: c.Start, To: c.End})
+	p, err := cached(&problems, name, func() (*feasible.Problem, error) {
+		data, err := os.ReadFile(testdata.Path("campaigns", name+".json"))
+		if err != nil {
+			return nil, err
+		}
+		c, err := scheduler.ReadCampaign(data)
+		if err != nil {
+			return nil, err
+		}
+		return feasible.Build(c, scheduler.Horizon{From: c.Start, To: c.End})
+	})
 	if err != nil {
 		t.Fatal(err)
 	}
 	return p
 }
 
-// plans are plans to explain: the planner's own after little search, and the
-// same with every third scan left out.
-func plans(t testing.TB, p *feasible.Problem) map[string]*scheduler.Plan {
+// planOf is a plan that the planner makes of a campaign after little search;
+// tests only read it.
+func planOf(t testing.TB, name string) *scheduler.Plan {
 	t.Helper()
-	r, err := solve.Solve(p, solve.Options{Seed: 5, Effort: 20})
+	p := problemOf(t, name)
+	plan, err := cached(&solved, name, func() (*scheduler.Plan, error) {
+		r, err := solve.Solve(p, solve.Options{Seed: 5, Effort: 20})
+		if err != nil {
+			return nil, err
+		}
+		return r.Plan, nil
+	})
 	if err != nil {
 		t.Fatal(err)
 	}
-	return map[string]*scheduler.Plan{"planned": r.Plan, "thinned": thinned(p, r.Plan)}
+	return plan
+}
+
+// What tests share: name → func() (T, error).
+var problems, solved sync.Map
+
+func cached[T any](m *sync.Map, name string, make func() (T, error)) (T, error) {
+	f, _ := m.LoadOrStore(name, sync.OnceValues(make))
+	return f.(func() (T, error))()
+}
+
+// plans are plans to explain: the planner's own after little search, and the
+// same with every third scan left out.
+func plans(t testing.TB, name string) map[string]*scheduler.Plan {
+	t.Helper()
+	plan := planOf(t, name)
+	return map[string]*scheduler.Plan{"planned": plan, "thinned": thinned(problemOf(t, name), plan)}
 }
 
 // thinned is a plan without every third scan, and without what the others
@@ -75,17 +102,14 @@ func TestEveryUnmetUnitHasAReason(t *testing.T) {
 		t.Run(name, func(t *testing.T) {
 			t.Parallel()
 			p := problemOf(t, name)
-			r, err := solve.Solve(p, solve.Options{Seed: 2, Effort: 20})
-			if err != nil {
-				t.Fatal(err)
-			}
-			list := Unmet(p, r.Plan)
-			if len(list) != len(r.Plan.Unmet) || len(list) == 0 {
-				t.Fatalf("%d units explained, %d unmet", len(list), len(r.Plan.Unmet))
+			plan := planOf(t, name)
+			list := Unmet(p, plan)
+			if len(list) != len(plan.Unmet) || len(list) == 0 {
+				t.Fatalf("%d units explained, %d unmet", len(list), len(plan.Unmet))
 			}
 			for i, u := range list {
-				if u.Unit != r.Plan.Unmet[i].Unit || u.Goal != r.Plan.Unmet[i].Goal || u.Weight != r.Plan.Unmet[i].Weight {
-					t.Errorf("unit %d is %s of %s, the planner has %s", i, u.Unit, u.Goal, r.Plan.Unmet[i].Unit)
+				if u.Unit != plan.Unmet[i].Unit || u.Goal != plan.Unmet[i].Goal || u.Weight != plan.Unmet[i].Weight {
+					t.Errorf("unit %d is %s of %s, the planner has %s", i, u.Unit, u.Goal, plan.Unmet[i].Unit)
 				}
 				if len(u.Reasons) == 0 {
 					t.Errorf("%s: no reason", u.Unit)
@@ -111,7 +135,7 @@ func TestPlacesAreAsTheReasonsSay(t *testing.T) {
 			t.Parallel()
 			p := problemOf(t, name)
 			tried := 0
-			for effort, plan := range plans(t, p) {
+			for effort, plan := range plans(t, name) {
 				e := newExplainer(p, plan)
 				for ui := range p.Units.Units {
 					if e.times(ui) >= p.Units.Units[ui].N {

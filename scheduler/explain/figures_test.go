@@ -10,7 +10,6 @@ import (
 	"cadencewright/scheduler"
 	"cadencewright/scheduler/almanac"
 	"cadencewright/scheduler/feasible"
-	"cadencewright/scheduler/solve"
 	"cadencewright/scheduler/verify"
 )
 
@@ -166,11 +165,8 @@ func TestPassagesInReasons(t *testing.T) {
 // Each scan that would have to go must be in the way by itself.
 func TestDisplacedScansAreInTheWay(t *testing.T) {
 	p := problemOf(t, "medium-1")
-	r, err := solve.Solve(p, solve.Options{Seed: 6, Effort: 20})
-	if err != nil {
-		t.Fatal(err)
-	}
-	e := newExplainer(p, r.Plan)
+	plan := planOf(t, "medium-1")
+	e := newExplainer(p, plan)
 	tried := 0
 	for ui := range p.Units.Units {
 		q := e.question(ui)

@@ -7,7 +7,6 @@ import (
 
 	"cadencewright/scheduler"
 	"cadencewright/scheduler/feasible"
-	"cadencewright/scheduler/solve"
 
 	"pgregory.net/rapid"
 )
@@ -15,13 +14,10 @@ import (
 // The same problem and plan give the same reasons, word by word.
 func TestSameReasonsAgain(t *testing.T) {
 	p := problemOf(t, "hard-1")
-	r, err := solve.Solve(p, solve.Options{Seed: 2, Effort: 20})
-	if err != nil {
-		t.Fatal(err)
-	}
-	want := Unmet(p, r.Plan)
+	plan := planOf(t, "hard-1")
+	want := Unmet(p, plan)
 	for range 10 {
-		if got := Unmet(p, r.Plan); !reflect.DeepEqual(got, want) {
+		if got := Unmet(p, plan); !reflect.DeepEqual(got, want) {
 			t.Fatal("other reasons the second time")
 		}
 	}
@@ -30,16 +26,13 @@ func TestSameReasonsAgain(t *testing.T) {
 // Explaining changes neither the problem nor the plan.
 func TestExplainingChangesNothing(t *testing.T) {
 	p := problemOf(t, "small-2")
-	r, err := solve.Solve(p, solve.Options{Seed: 2, Effort: 20})
+	plan := planOf(t, "small-2")
+	before, err := scheduler.WritePlan(plan)
 	if err != nil {
 		t.Fatal(err)
 	}
-	before, err := scheduler.WritePlan(r.Plan)
-	if err != nil {
-		t.Fatal(err)
-	}
-	Unmet(p, r.Plan)
-	after, err := scheduler.WritePlan(r.Plan)
+	Unmet(p, plan)
+	after, err := scheduler.WritePlan(plan)
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -41,51 +41,70 @@ func (q *question) overlap() {
 // that could be. close says that there are such instants, but all too near to
 // a neighbouring window's.
 func (q *question) commonStarts(list []reach, lo, hi float64) (at []float64, most int, close bool) {
-	grid := float64(q.GridMin)
-	covers := map[uint32]map[int]map[int]bool{} // band, grid instant, telescope
-	add := func(bands uint32, telescope int, from, to float64) {
-		for bit := uint32(1); bit <= bands; bit <<= 1 {
-			if bands&bit == 0 {
-				continue
-			}
-			if covers[bit] == nil {
-				covers[bit] = map[int]map[int]bool{}
-			}
-			for k := int(math.Ceil(max(from, lo) / grid)); float64(k)*grid <= min(to, hi); k++ {
-				if covers[bit][k] == nil {
-					covers[bit][k] = map[int]bool{}
-				}
-				covers[bit][k][telescope] = true
-			}
+	count := q.telescopesAt(q.covers(list), lo, hi)
+	first := int(math.Ceil(lo / float64(q.GridMin)))
+	for k, n := range count {
+		most = max(most, n)
+		switch t := float64((first + k) * q.GridMin); {
+		case n < q.goal.Count || q.unit.Timeliness(t) == 0:
+		case !q.spaced(t):
+			close = true
+		default:
+			at = append(at, t)
 		}
 	}
-	for _, r := range list {
-		b := &q.Blocks[r.block]
-		for _, l := range r.place.Lengths {
-			for _, run := range l.Runs {
-				add(r.bands, b.Telescope, b.Minute(run.From, q.GridMin), b.Minute(run.To-1+l.Steps, q.GridMin)-q.goal.OverlapMin)
-			}
-		}
-	}
-	for _, o := range q.standing() {
-		add(o.bands, q.Blocks[o.block].Telescope, o.startMin, o.endMin-q.goal.OverlapMin)
-	}
-	seen := map[int]bool{}
-	for _, instants := range covers {
-		for k, telescopes := range instants {
-			most = max(most, len(telescopes))
-			switch t := float64(k) * grid; {
-			case len(telescopes) < q.goal.Count || q.unit.Timeliness(t) == 0 || seen[k]:
-			case !q.spaced(t):
-				close = true
-			default:
-				seen[k] = true
-				at = append(at, t)
-			}
-		}
-	}
-	slices.Sort(at)
 	return at, most, close
+}
+
+// covers are the times from which some scan of a telescope could be under way
+// for the wanted time; the scans of the plan count, too.
+func (q *question) covers(list []reach) []stretch {
+	covers := q.stretches(list)
+	for _, o := range q.standing() {
+		covers = append(covers, stretch{telescope: q.Blocks[o.block].Telescope, block: o.block, bands: o.bands, lo: o.startMin, hi: o.endMin})
+	}
+	for i := range covers {
+		covers[i].hi -= q.goal.OverlapMin
+	}
+	return covers
+}
+
+// telescopesAt is on how many telescopes at once, in the band with most, the
+// covers lie at every grid instant in [lo, hi]; instants after the last cover
+// are left out.
+func (q *question) telescopesAt(covers []stretch, lo, hi float64) []int {
+	grid := float64(q.GridMin)
+	last := lo
+	for _, c := range covers {
+		last = max(last, c.hi)
+	}
+	first := int(math.Ceil(lo / grid))
+	n := max(0, int(math.Floor(min(hi, last)/grid))-first+1)
+	top, seen, here := make([]int, n), make([]int, n), make([]bool, n)
+	for bit := uint32(1); bit <= q.allBands(); bit <<= 1 {
+		clear(seen)
+		for t := range q.Campaign.Telescopes { // a telescope counts once, however many scans it could make
+			clear(here)
+			for _, c := range covers {
+				if c.telescope != t || c.bands&bit == 0 {
+					continue
+				}
+				from, to := int(math.Ceil(c.lo/grid))-first, int(math.Floor(c.hi/grid))-first
+				for k := max(0, from); k <= min(to, n-1); k++ {
+					here[k] = true
+				}
+			}
+			for k := range here {
+				if here[k] {
+					seen[k]++
+				}
+			}
+		}
+		for k := range top {
+			top[k] = max(top[k], seen[k])
+		}
+	}
+	return top
 }
 
 // placeTogether weighs the common times at which the unit could be served.

@@ -89,10 +89,12 @@ func (q *question) pairUp(sides [2][]offered, lo, hi float64, best *choice, used
 			close = true
 			return
 		}
+		stands := false
 		for _, o := range options {
 			used[o.block] = true
+			stands = stands || o.had != nil
 		}
-		if best.possible++; gain-loss >= best.net {
+		if best.possible++; gain-loss > best.net || stands && gain-loss == best.net {
 			best.possible--
 			best.consider(gain, options...)
 		}

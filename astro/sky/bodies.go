@@ -19,7 +19,9 @@ type Body struct {
 // DistanceAU is the distance in astronomical units.
 func (b Body) DistanceAU() float64 { return b.DistanceKm / meeus.AUKm }
 
-// Sun is the apparent Sun, within 10 arcsec.
+// Sun is the apparent Sun: 10 arcsec and 1,500 km from ERFA's epv00 with
+// aberration and pnm06a in 2026 to 2030, 15 arcsec over all dates. The distance is
+// geometric, at the instant itself.
 func Sun(t time.Time) (Body, error) {
 	tt, err := timescale.TT(t)
 	if err != nil {
@@ -31,8 +33,10 @@ func Sun(t time.Time) (Body, error) {
 		DistanceKm: meeus.SunEcliptic(tt.JD()).Norm() * meeus.AUKm}, nil
 }
 
-// Moon is the apparent Moon, within 10 arcsec and 10 km. The series already
-// holds light time; annual aberration does not move a body that moves along.
+// Moon is the apparent Moon, 9 arcsec and 10 km from the JPL ephemeris DE405
+// in 2026 to 2030. The series already holds light time; annual aberration does
+// not move a body that moves along with the Earth. Over a site it stands up to a
+// degree elsewhere: see MoonOver.
 func Moon(t time.Time) (Body, error) {
 	tt, err := timescale.TT(t)
 	if err != nil {
@@ -42,7 +46,9 @@ func Moon(t time.Time) (Body, error) {
 	return Body{RADeg: wrap360(v.Lon().Deg()), DecDeg: v.Lat().Deg(), DistanceKm: v.Norm()}, nil
 }
 
-// moonTrue is the vector to the Moon in km, true equator and equinox of date.
+// moonTrue is the vector to the Moon in km, true equator and equinox of date:
+// the series is in the mean ecliptic of date, to which nutation is added by two
+// rotations.
 func moonTrue(tt timescale.MJD) astro.Vec3 {
 	jde := tt.JD()
 	dpsi, deps, eps := meeus.Nutation(jde)
@@ -50,13 +56,15 @@ func moonTrue(tt timescale.MJD) astro.Vec3 {
 	return n.Apply(meeus.MoonEcliptic(jde))
 }
 
-// BodyOver is a body over a site, the parallax of the site included.
+// BodyOver is a body over a site, the parallax of the site included (8.8
+// arcsec at most for the Sun, about a degree for the Moon).
 type BodyOver struct {
 	AzDeg, ElDeg float64
 	DistanceKm   float64 // from the site
 }
 
-// SunOver is the Sun over a site.
+// SunOver is the Sun over a site, its centre, without refraction; dut1S is
+// UT1-UTC in seconds.
 func SunOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
 	b, err := Sun(t)
 	if err != nil {
@@ -65,7 +73,8 @@ func SunOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) 
 	return b.over(site, t, dut1S)
 }
 
-// MoonOver is the Moon over a site.
+// MoonOver is the Moon over a site, its centre, without refraction; dut1S is
+// UT1-UTC in seconds.
 func MoonOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
 	b, err := Moon(t)
 	if err != nil {
@@ -74,6 +83,8 @@ func MoonOver(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error)
 	return b.over(site, t, dut1S)
 }
 
+// over moves the body's geocentric place to the site and turns it into azimuth
+// and elevation.
 func (b Body) over(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, error) {
 	if err := checkSite(site); err != nil {
 		return BodyOver{}, err
@@ -89,7 +100,8 @@ func (b Body) over(site astro.Geodetic, t time.Time, dut1S float64) (BodyOver, e
 }
 
 // siteVector is a site from the Earth's centre in km, in the frame of the true
-// equator and equinox of date (WGS84; polar motion left out).
+// equator and equinox of date (WGS84; polar motion left out). The local sidereal
+// time takes the place of the longitude.
 func siteVector(site astro.Geodetic, lst astro.Angle) astro.Vec3 {
 	const a, f = 6378.137, 1 / 298.257223563
 	sinPhi, cosPhi := math.Sincos(float64(site.Lat))

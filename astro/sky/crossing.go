@@ -19,7 +19,8 @@ type Crossing struct {
 // Visibility says what a star does about a limit over a stretch of time.
 type Visibility string
 
-// What a star can do about a limit.
+// What a star can do about a limit. The last two are told apart by where it
+// stands at the start of the stretch, on the limit being above.
 const (
 	Crosses     Visibility = "crosses"
 	AlwaysAbove Visibility = "always above"
@@ -67,8 +68,8 @@ const siderealDay time.Duration = 86164090530833 // nanoseconds: 86400 s / sider
 type crossing struct {
 	site  astro.Geodetic
 	star  astro.Star
-	sinEl float64
-	dut1S float64
+	sinEl float64 // of the limit
+	dut1S float64 // UT1-UTC, s
 }
 
 // hourAngleOf is the hour angle at which a declination reaches the limit, in
@@ -173,12 +174,16 @@ func (c *crossing) wait(t time.Time, up bool) (time.Duration, bool, error) {
 }
 
 // UpperTransit is the first instant from t on at which the star passes the
-// meridian above the pole, and its elevation then.
+// meridian above the pole (hour angle 0), and its elevation then in degrees,
+// which is negative for a star that never rises. The instant is within 1 ms of
+// hour angle 0. A star that passed less than 0.1 ms before t counts as passing
+// at t.
 func UpperTransit(site astro.Geodetic, star astro.Star, t time.Time, dut1S float64) (time.Time, float64, error) {
-	c := crossing{site: site, star: star, dut1S: dut1S}
 	at := t
+	// The second round already takes off what precession and aberration have
+	// moved the star by on the way.
 	for i := range 4 {
-		p, err := Observe(c.site, c.star, at, dut1S)
+		p, err := Observe(site, star, at, dut1S)
 		if err != nil {
 			return time.Time{}, 0, err
 		}

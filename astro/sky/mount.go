@@ -11,11 +11,13 @@ type MaskPoint struct {
 	ElDeg float64
 }
 
-// Mask is a horizon, piecewise linear in azimuth and wrapping at 360 degrees,
-// its points in ascending azimuth. An empty mask is no obstruction.
+// Mask is a horizon: the least elevation that can be seen at each azimuth,
+// linear between points and wrapping at 360 degrees. Its points are in ascending
+// azimuth; two at one azimuth make a wall. An empty mask is no obstruction.
 type Mask []MaskPoint
 
-// ElevationDeg is the horizon's elevation at an azimuth; -90 for an empty mask.
+// ElevationDeg is the horizon's elevation at an azimuth, which may be any
+// number of degrees, also below 0 and beyond 360; -90 for an empty mask.
 func (m Mask) ElevationDeg(azDeg float64) float64 {
 	if len(m) == 0 {
 		return -90
@@ -45,7 +47,10 @@ type Axis struct {
 	AccelDegS2 float64 // 0: reaches its rate at once
 }
 
-// Seconds is the time the drive takes for a travel, from rest to rest.
+// Seconds is the time the drive takes for a travel in degrees, either way, from
+// rest to rest: it speeds up and slows down at the same acceleration, and holds
+// its rate in between if the travel is long enough to reach it, which takes
+// rate²/acceleration. Settling is not in it.
 func (a Axis) Seconds(travelDeg float64) float64 {
 	d := math.Abs(travelDeg)
 	switch {
@@ -58,9 +63,12 @@ func (a Axis) Seconds(travelDeg float64) float64 {
 	}
 }
 
-// UnwrapDeg makes an azimuth track continuous, taking the shorter way from
-// each sample to the next. It writes to dst where that is long enough, which
-// may be az itself.
+// UnwrapDeg makes an azimuth track in degrees continuous, taking the shorter
+// way from each sample to the next; the first stays as it is. Samples must be
+// close enough for the shorter way to be the one taken: near the zenith azimuth
+// turns by half a turn in the time that the star takes to pass, some seconds at
+// 1 arcminute. It writes to dst where that is long enough, which may be az
+// itself.
 func UnwrapDeg(az, dst []float64) []float64 {
 	if cap(dst) < len(az) {
 		dst = make([]float64, len(az))
@@ -78,8 +86,10 @@ func UnwrapDeg(az, dst []float64) []float64 {
 }
 
 // MotorTurns are the whole turns by which a continuous azimuth path between
-// two extremes can be shifted to stay inside a motor's range: all from lo to
-// hi, none where lo > hi.
+// two extremes in degrees can be shifted to stay inside a motor's range: all
+// from lo to hi, none where lo > hi. A range wider than a turn may offer several,
+// and one narrower than the path none. The motor stands at the azimuth plus 360
+// degrees times the turn chosen.
 func MotorTurns(pathLoDeg, pathHiDeg float64, rangeDeg [2]float64) (lo, hi int) {
 	const rounding = 1e-12 // a path that just touches its range is inside
 	lo = int(math.Ceil((rangeDeg[0]-pathLoDeg)/360 - rounding))

@@ -15,12 +15,15 @@ type Track struct {
 	SunDeg []float64 // separation from the apparent Sun
 }
 
+// resize gives every column n values.
 func (t *Track) resize(n int) {
 	for _, col := range []*[]float64{&t.AzDeg, &t.ElDeg, &t.HADeg, &t.DecDeg, &t.SunDeg} {
 		*col = resized(*col, n)
 	}
 }
 
+// resized is a slice of n values, col itself where it is long enough; what it
+// holds is to be overwritten.
 func resized(col []float64, n int) []float64 {
 	if cap(col) < n {
 		return make([]float64, n)
@@ -34,7 +37,7 @@ type leg struct {
 	w     *Window
 	star  astro.Star
 	knot  int        // the one before
-	d     astro.Vec3 // the star's direction there, true of date
+	d     astro.Vec3 // the star's apparent direction there, true of date
 	slope astro.Vec3 // over the whole leg
 	next  astro.Vec3
 
@@ -63,8 +66,11 @@ func (l *leg) advance() bool {
 	return true
 }
 
-// Track samples a star at every instant of the window. It reuses the columns
-// of dst where they are long enough, and allocates nothing then.
+// Track samples a star at every instant of the window, within 0.02 arcsec of
+// what Observe says there (the Sun's separation within 1 arcsec, 5 at a degree
+// from the Sun). It reuses the columns of dst where they are long enough, and
+// allocates nothing then. A sample costs about thirty nanoseconds, nearly all of
+// them in two inverse tangents.
 func (w *Window) Track(star astro.Star, dst *Track) {
 	dst.resize(w.n)
 	for l := w.legs(star); l.advance(); {
@@ -73,7 +79,9 @@ func (w *Window) Track(star astro.Star, dst *Track) {
 	}
 }
 
-// fillPlaces fills the columns of the leg's samples but the Sun's.
+// fillPlaces fills the columns of the leg's samples but the Sun's. Azimuth and
+// elevation come from the vector; hour angle and declination, which hardly
+// change over a leg, are taken linear in it.
 func (l *leg) fillPlaces(dst *Track) {
 	w, part := l.w, l.first
 	lon := l.d.Lon()
@@ -116,7 +124,9 @@ func (l *leg) fillSun(dst []float64) {
 
 // SinElevation is the sine of a star's elevation at every instant, without an
 // inverse function: limits can be tested on it many times faster than on
-// angles. It reuses dst where that is long enough.
+// angles, since the sine grows with the elevation from -90 to 90 degrees. It is
+// good to 1e-8: 0.002 arcsec, but half an arcminute at the very zenith, where
+// the sine is flat. It reuses dst where that is long enough.
 func (w *Window) SinElevation(star astro.Star, dst []float64) []float64 {
 	dst = resized(dst, w.n)
 	for l := w.legs(star); l.advance(); {

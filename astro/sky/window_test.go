@@ -40,7 +40,7 @@ func TestTrackEqualsObserve(t *testing.T) {
 		if d := apart(tr.HADeg[i], tr.DecDeg[i], p.HADeg, p.DecDeg); d > 0.02 {
 			t.Errorf("hour angle and declination off by %.3f arcsec", d)
 		}
-		if d := math.Abs(sin[i] - math.Sin(p.ElDeg*math.Pi/180)); d > 3e-7 {
+		if d := math.Abs(sin[i] - math.Sin(p.ElDeg*math.Pi/180)); d > 1e-8 {
 			t.Errorf("sine of the elevation off by %g", d)
 		}
 		if d := math.Abs(tr.SunDeg[i]-p.SunDeg) * 3600; d > 1+4/math.Max(p.SunDeg, 0.02) {

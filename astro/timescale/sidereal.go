@@ -24,9 +24,11 @@ func UT1(t time.Time, dut1S float64) (MJD, error) {
 	return UTC(t).AddS(dut1S), nil
 }
 
-// GAST is Greenwich apparent sidereal time, within 6 ms of the IAU 2006/2000A
-// value (IAU 1982 mean sidereal time with IAU 1980 nutation); dut1S is UT1-UTC
-// in seconds.
+// GAST is Greenwich apparent sidereal time, [0, 2π), within 6 ms of the IAU
+// 2006/2000A value in 2026 to 2030 and 20 ms over all dates (IAU 1982 mean
+// sidereal time with IAU 1980 nutation: it belongs with the precession of 1976,
+// with which most of the difference cancels in hour angles); dut1S is UT1-UTC in
+// seconds.
 func GAST(t time.Time, dut1S float64) (astro.Angle, error) {
 	ut1, err := UT1(t, dut1S)
 	if err != nil {

@@ -57,7 +57,8 @@ func TAIMinusUTCS(t time.Time) (float64, error) {
 	return 0, &astro.RangeError{Quantity: "instant", Value: t.Format(time.RFC3339), Allowed: "1972 or later"}
 }
 
-// UTC is the instant as a (quasi-)MJD of UTC, days of 86400 s.
+// UTC is the instant as a (quasi-)MJD of UTC, days of 86400 s. Differences
+// across a leap second lack that second; turn both into TT first.
 func UTC(t time.Time) MJD {
 	sec, ns := t.Unix(), t.Nanosecond()
 	day := sec / 86400
@@ -67,7 +68,9 @@ func UTC(t time.Time) MJD {
 	return NewMJD(mjdUnixEpoch+int(day), (float64(sec-day*86400)+float64(ns)*1e-9)/86400)
 }
 
-// TT is Terrestrial Time.
+// TT is Terrestrial Time: UTC + (TAI-UTC) + 32.184 s, 69.184 s ahead since 2017.
+// It is what planetary and stellar positions are counted in. It does not come
+// from an estimate of UT1: those run 2 to 35 s off for the 2020s.
 func TT(t time.Time) (MJD, error) {
 	tai, err := TAIMinusUTCS(t)
 	if err != nil {
@@ -77,14 +80,16 @@ func TT(t time.Time) (MJD, error) {
 }
 
 // TDBMinusTTS is TDB-TT at the Earth's centre in seconds, within 0.03 ms of
-// the full series in 2026-2030; tt is an MJD. Two terms of Fairhead and
-// Bretagnon 1990 (A&A 229, 240), as in the Astronomical Almanac.
+// the full series (ERFA dtdb) in 2026-2030 and 0.05 ms over all dates; tt is an
+// MJD. Two terms of Fairhead and Bretagnon 1990 (A&A 229, 240), as in the
+// Astronomical Almanac. At a site it differs by up to 2 microseconds.
 func TDBMinusTTS(tt float64) float64 {
 	g := (357.53 + 0.98560028*(tt-51544.5)) * math.Pi / 180
 	return 0.001657*math.Sin(g) + 0.000014*math.Sin(2*g)
 }
 
-// TDB is Barycentric Dynamical Time at the Earth's centre, within 0.03 ms.
+// TDB is Barycentric Dynamical Time at the Earth's centre, within 0.05 ms: the
+// scale that ephemerides of binaries count in.
 func TDB(t time.Time) (MJD, error) {
 	tt, err := TT(t)
 	if err != nil {
@@ -109,6 +114,7 @@ func FromTDB(tdb MJD) (time.Time, error) {
 	return time.Time{}, err
 }
 
+// fromUTC is the instant of a (quasi-)MJD of UTC, rounded to a microsecond.
 func fromUTC(m MJD) time.Time {
 	return time.Unix(int64(m.Day-mjdUnixEpoch)*86400, 0).UTC().Add(time.Duration(math.Round(m.Frac*86400e6)) * time.Microsecond)
 }

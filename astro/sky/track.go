@@ -68,7 +68,7 @@ func (l *leg) advance() bool {
 
 // Track samples a star at every instant of the window, within 0.02 arcsec of
 // what Observe says there (the Sun's separation within 1 arcsec, 5 at a degree
-// from the Sun). It reuses the columns of dst where they are long enough, and
+// from the Sun or from the point opposite). It reuses the columns of dst where they are long enough, and
 // allocates nothing then. A sample costs about thirty nanoseconds, nearly all of
 // them in two inverse tangents.
 func (w *Window) Track(star astro.Star, dst *Track) {

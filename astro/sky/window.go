@@ -14,7 +14,7 @@ import (
 // to 0.002 arcsec for a star (aberration, and the fortnightly term of
 // nutation, bend by 0.04 arcsec a day squared). The Sun's separation is taken
 // linear over two hours: 0.2 arcsec, more only within a few degrees of the Sun
-// (3 at one degree).
+// and of the point opposite (3 at one degree).
 const (
 	knotSpan = 12 * time.Hour
 	sunSpan  = 2 * time.Hour

@@ -83,7 +83,7 @@ func TestAlmanacOverAllItsDates(t *testing.T) {
 		return TrueOfDate(jde)[0].AngleTo(r.vec("equinox", "")).Arcsec()
 	})
 	check("sidereal time", "s", 0.02, func(r almanacRow, jde float64) float64 {
-		return math.Abs((ApparentSidereal(jde)-astro.Angle(r["gast_rad"])).WrapSigned().Arcsec()) / 15
+		return math.Abs((ApparentSidereal(jde) - astro.Angle(r["gast_rad"])).WrapSigned().Arcsec()) / 15
 	})
 	check("direction of the Greenwich meridian", "arcsec", 0.2, func(r almanacRow, jde float64) float64 {
 		mine := greenwich(TrueOfDate(jde), ApparentSidereal(jde))

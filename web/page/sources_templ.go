@@ -171,7 +171,7 @@ func sourceTable(v view.Sources) templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 13, "<table class=\"cards\"><thead><tr><th scope=\"col\">Name</th><th scope=\"col\">State</th><th scope=\"col\">Last counted scan</th><th scope=\"col\">Next due</th><th scope=\"col\" class=\"num\">Period (ms)</th><th scope=\"col\" class=\"num\">DM (pc cm⁻³)</th><th scope=\"col\" class=\"num\">Orbit (d)</th><th scope=\"col\" class=\"num\">Goals</th></tr></thead> <tbody>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 13, "<table class=\"cards pairs\"><thead><tr><th scope=\"col\">Name</th><th scope=\"col\">State</th><th scope=\"col\">Last counted scan</th><th scope=\"col\">Next due</th><th scope=\"col\" class=\"num\">Period (ms)</th><th scope=\"col\" class=\"num\">DM (pc cm⁻³)</th><th scope=\"col\" class=\"num\">Orbit (d)</th><th scope=\"col\" class=\"num\">Goals</th></tr></thead> <tbody>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

@@ -96,7 +96,7 @@ func telescopes(v view.Telescopes) templ.Component {
 					return templ_7745c5c3_Err
 				}
 			} else {
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 7, "<section class=\"entry plain-entry\" aria-label=\"Telescopes\"><div class=\"matter\"><table class=\"cards\"><thead><tr><th scope=\"col\">Telescope</th><th scope=\"col\">Site</th><th scope=\"col\">Mount</th><th scope=\"col\">Receivers</th><th scope=\"col\" class=\"num\">Blocks</th><th scope=\"col\" class=\"num\">Hours given</th><th scope=\"col\" class=\"num\">Hours planned</th><th scope=\"col\">Next block (UTC)</th></tr></thead> <tbody>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 7, "<section class=\"entry plain-entry\" aria-label=\"Telescopes\"><div class=\"matter\"><table class=\"cards pairs\"><thead><tr><th scope=\"col\">Telescope</th><th scope=\"col\">Site</th><th scope=\"col\">Mount</th><th scope=\"col\">Receivers</th><th scope=\"col\" class=\"num\">Blocks</th><th scope=\"col\" class=\"num\">Hours given</th><th scope=\"col\" class=\"num\">Hours planned</th><th scope=\"col\">Next block (UTC)</th></tr></thead> <tbody>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
@@ -679,7 +679,7 @@ func blocksTable(v view.Telescope) templ.Component {
 				return templ_7745c5c3_Err
 			}
 		} else {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 41, "<table class=\"cards\"><thead><tr><th scope=\"col\">Block</th><th scope=\"col\">When (UTC)</th><th scope=\"col\">Local start</th><th scope=\"col\">Receivers</th><th scope=\"col\" class=\"num\">Scans</th><th scope=\"col\" class=\"num\">Used</th><th scope=\"col\" class=\"num\">Lost</th><th scope=\"col\">Run sheet</th></tr></thead> <tbody>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 41, "<table class=\"cards pairs\"><thead><tr><th scope=\"col\">Block</th><th scope=\"col\">When (UTC)</th><th scope=\"col\">Local start</th><th scope=\"col\">Receivers</th><th scope=\"col\" class=\"num\">Scans</th><th scope=\"col\" class=\"num\">Used</th><th scope=\"col\" class=\"num\">Lost</th><th scope=\"col\">Run sheet</th></tr></thead> <tbody>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
@@ -939,7 +939,7 @@ func receiverTable(rs []view.ReceiverRow) templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 62, "<table class=\"cards\"><thead><tr><th scope=\"col\">Receiver</th><th scope=\"col\">Bands</th><th scope=\"col\" class=\"num\">Centre (MHz)</th><th scope=\"col\" class=\"num\">Bandwidth (MHz)</th><th scope=\"col\" class=\"num\">Polarisations</th><th scope=\"col\" class=\"num\">T rec (K)</th><th scope=\"col\" class=\"num\">Gain (K/Jy)</th><th scope=\"col\" class=\"num\">Digitisation</th><th scope=\"col\" class=\"num\">Worst interference</th></tr></thead> <tbody>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 62, "<table class=\"cards pairs\"><thead><tr><th scope=\"col\">Receiver</th><th scope=\"col\">Bands</th><th scope=\"col\" class=\"num\">Centre (MHz)</th><th scope=\"col\" class=\"num\">Bandwidth (MHz)</th><th scope=\"col\" class=\"num\">Polarisations</th><th scope=\"col\" class=\"num\">T rec (K)</th><th scope=\"col\" class=\"num\">Gain (K/Jy)</th><th scope=\"col\" class=\"num\">Digitisation</th><th scope=\"col\" class=\"num\">Worst interference</th></tr></thead> <tbody>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

@@ -32,7 +32,7 @@ func rows(v view.Week) templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 1, "<section aria-labelledby=\"blocks-title\"><div class=\"rows-head\"><div><h2 id=\"blocks-title\">Blocks</h2><button type=\"button\" class=\"plain small no-print\" data-opens=\"keys\" hidden>Keys</button></div>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 1, "<section aria-labelledby=\"blocks-title\"><div class=\"rows-head\"><div class=\"rows-title\"><h2 id=\"blocks-title\">Blocks</h2><button type=\"button\" class=\"plain small no-print\" data-opens=\"keys\" hidden>Keys</button></div>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

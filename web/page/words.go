@@ -177,7 +177,7 @@ func sourceWord(s view.SourceState) string {
 func pointing(p view.Pointing) string {
 	s := "az " + view.Degrees(p.AzDeg) + ", el " + view.Degrees(p.ElDeg) + ", HA " + view.Fixed(p.HAH, 2) + " h"
 	if p.MotorAzDeg != nil {
-		s += ", drive " + view.Degrees(*p.MotorAzDeg) + fmt.Sprintf(" (turn %+d)", p.Turn)
+		s += fmt.Sprintf(", drive %s (turn %d)", view.Degrees(*p.MotorAzDeg), p.Turn)
 	}
 	return strings.ReplaceAll(s, "-", "−")
 }

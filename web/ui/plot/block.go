@@ -13,7 +13,7 @@ import (
 // Geometry of a block row, in the drawing's units.
 const (
 	rowW, rowH       = 960, 136
-	rowX0, rowX1     = 46, 948
+	rowX0, rowX1     = 54, 952
 	laneTop, laneBot = 20, 104
 	barTop, barH     = 50, 42
 	charW            = 6.7 // width of a character of a bar's label
@@ -40,7 +40,7 @@ func BlockRow(b view.BlockRow, week, source string) string {
 	for _, s := range freeOf(b) {
 		x, w := a.clip(s)
 		if label := view.Duration(s.Minutes()) + " free"; w > charW*float64(len(label))+8 {
-			c.text("free", x+w/2, laneBot-5, "middle", label)
+			c.text("free", x+w/2, barTop+barH/2+4, "middle", label)
 		}
 	}
 	for _, s := range b.Scans {
@@ -76,7 +76,7 @@ func (c *canvas) rowAxes(a axis, b view.BlockRow) {
 }
 
 // labelX keeps a label in the middle of x within the drawing.
-func labelX(x float64) float64 { return min(max(x, rowX0+2), rowX1-6) }
+func labelX(x float64) float64 { return min(max(x, rowX0+6), rowX1-12) }
 
 // rowCurve draws where the chosen source is and where it may be observed.
 func (c *canvas) rowCurve(a axis, b view.BlockRow, source string) {
@@ -126,13 +126,13 @@ func (c *canvas) bar(a axis, s view.Scan, week string) {
 	}
 	c.rect("edge", x, barTop, w, 3)
 	if mark := Mark(s); mark != "" && w >= 12 {
-		c.text("state", x+w-4, barTop+barH-6, "end", mark)
+		c.quiet("state", x+w-4, barTop+barH-6, "end", mark)
 	}
 	if label := fit(s.Source, w-6); label != "" {
-		c.text("name", x+4, barTop+18, "start", label)
+		c.quiet("name", x+4, barTop+18, "start", label)
 	}
 	if room := w - 20; charW*float64(len(s.Receiver)) <= room {
-		c.text("rx", x+4, barTop+34, "start", s.Receiver)
+		c.quiet("rx", x+4, barTop+34, "start", s.Receiver)
 	}
 	c.close("a")
 }

@@ -103,6 +103,14 @@ func (c *canvas) text(class string, x, y float64, anchor, s string) {
 	c.close("text")
 }
 
+// quiet writes a label that its link's name says already, so that it is not
+// read out twice.
+func (c *canvas) quiet(class string, x, y float64, anchor, s string) {
+	c.tag("g", "aria-hidden", "true")
+	c.text(class, x, y, anchor, s)
+	c.close("g")
+}
+
 // path draws a polyline through points, with a gap where y is NaN.
 func (c *canvas) path(class string, xs, ys []float64) {
 	var d strings.Builder

@@ -9,7 +9,7 @@ import (
 // Track draws a scan's elevation over its block: the scan marked, the allowed
 // stretch behind, the limit as a line.
 func Track(v view.ScanCard) string {
-	const w, h, x0, x1, top, bot = 720, 230, 40, 708, 20, 178
+	const w, h, x0, x1, top, bot = 720, 224, 62, 712, 20, 178
 	var c canvas
 	from, to := v.BlockSpan.Start, v.BlockSpan.End
 	if n := len(v.Track); n > 0 && (from.IsZero() || !to.After(from)) {
@@ -34,8 +34,8 @@ func Track(v view.ScanCard) string {
 	c.text("scale", 2, bot+32, "start", "local")
 	for _, t := range a.ticks(7) {
 		c.line("grid", a.x(t), top, a.x(t), bot)
-		c.text("tick", min(a.x(t), x1-10), 13, "middle", view.Clock(t))
-		c.text("tick local", min(a.x(t), x1-10), bot+32, "middle", view.LocalClock(t, v.Zone))
+		c.text("tick", min(max(a.x(t), x0+6), x1-12), 13, "middle", view.Clock(t))
+		c.text("tick local", min(max(a.x(t), x0+6), x1-12), bot+32, "middle", view.LocalClock(t, v.Zone))
 	}
 	lst := v.LSTStartH - v.Scan.Start.Sub(from).Hours()*view.SiderealRate
 	for _, t := range a.lstTicks(lst, 7) {
@@ -99,7 +99,7 @@ func Sky(p view.SkyPanel, from, to time.Time) string {
 // Horizon draws what a telescope can see: the horizon mask and the limits of
 // elevation over all azimuths.
 func Horizon(v view.Telescope) string {
-	const w, h, x0, x1, top, bot = 720, 220, 40, 708, 12, 180
+	const w, h, x0, x1, top, bot = 720, 222, 40, 700, 12, 180
 	var c canvas
 	y := elScale(top, bot)
 	x := func(az float64) float64 { return x0 + (x1-x0)*az/360 }
@@ -118,7 +118,7 @@ func Horizon(v view.Telescope) string {
 	for i, name := range []string{"N 0°", "NE 45°", "E 90°", "SE 135°", "S 180°", "SW 225°", "W 270°", "NW 315°", "N 360°"} {
 		at := x(45 * float64(i))
 		c.line("mark", at, bot, at, bot+4)
-		c.text("tick", min(at, x1-14), bot+17, "middle", name)
+		c.text("tick", at, bot+17, "middle", name)
 	}
 	c.text("scale", (x0+x1)/2, bot+34, "middle", "azimuth, from north through east")
 	return c.end()

@@ -9,7 +9,7 @@ import (
 // Strip draws the week at a glance: a line a telescope, seven days, each block
 // a link to its row, filled as far as scans fill it.
 func Strip(w view.Week) string {
-	const x0, x1, top, step = 46, 948, 20, 17
+	const x0, x1, top, step = 54, 952, 20, 17
 	height := float64(top + step*len(w.Telescopes) + 4)
 	var c canvas
 	a := axis{w.From, w.To, x0, x1}

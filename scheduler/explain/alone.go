@@ -7,6 +7,10 @@ import (
 	"cadencewright/scheduler/units"
 )
 
+// Every option is looked at, on the full grid: a week has some thousand for a
+// unit, and each costs little. The figures are then exact, and "there is no"
+// means that.
+
 // cadence explains a unit that one scan of enough precision serves.
 func (q *question) cadence() {
 	lo, hi := q.unit.Window()
@@ -21,7 +25,7 @@ func (q *question) cadence() {
 				if timely == 0 {
 					return
 				}
-				if info > top {
+				if info > top { // told even where it is enough, but too near a neighbour
 					top, topOf = info, *o
 				}
 				quality := units.Quality(info, q.goal.TOAUs)
@@ -67,6 +71,9 @@ func byBlock(list []reach) [][]reach {
 	}
 	return groups
 }
+
+// A later window's scan may not be moved to make room for an earlier one here:
+// the plan's own scans are taken as they stand.
 
 // spaced reports whether an instant keeps half an interval from those at which
 // the plan earns the neighbouring windows of the goal.
@@ -162,6 +169,8 @@ func (q *question) phase() {
 	}
 	best.tell()
 }
+
+// Where the plan earns the unit in some orbits already, those are spoken for.
 
 // openPassages are those that no scan of the plan that earns the unit covers.
 func (q *question) openPassages() []units.Passage {

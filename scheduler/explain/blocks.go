@@ -24,6 +24,10 @@ func (q *question) reaches(bands uint32, lo, hi float64) []reach {
 	return list
 }
 
+// The order of the questions is that in which a person would ask them, from
+// what cannot be changed this week to what nearly fits. A block is counted
+// under the first that it fails.
+
 // inBlock is what one block offers; where that is nothing, it notes why.
 func (q *question) inBlock(bi int, bands uint32, lo, hi float64) []reach {
 	b := &q.Blocks[bi]
@@ -82,7 +86,7 @@ func (q *question) notDetectable(b *feasible.Block, ri int) {
 // outsideWindow is told by the block that is nearest in time.
 func (q *question) outsideWindow(b *feasible.Block, lo, hi float64) {
 	start, end := b.Minute(0, q.GridMin), b.Minute(b.Steps, q.GridMin)
-	missed, how := start-hi, "late"
+	missed, how := start-hi, "late" // not above 0: the block reaches into the time
 	if end < hi {
 		missed, how = lo-end, "early"
 	}
@@ -106,6 +110,9 @@ func (q *question) outsideWindow(b *feasible.Block, lo, hi float64) {
 func (q *question) notUp(bi int) {
 	b := &q.Blocks[bi]
 	r, t := q.rejects[bi][q.goal.Source], q.telescope(b)
+	// The planner's counts are by the first limit that an instant fails, in the
+	// order elevation, Sun, mount: the last of them that any instant has got to
+	// is the one that stands in the way.
 	switch {
 	case r == nil || r.Samples == 0:
 		q.tooShort(b, 0)

@@ -66,8 +66,6 @@ func TestWhyACadenceUnitIsUnmet(t *testing.T) {
 			CableWrap, 1, []string{"no scan of 20 min", "20 to 60 deg"}},
 		{"precision", func(_ *scheduler.Campaign, g *scheduler.CadenceTarget) { g.TOAUs = 0.1 }, nil,
 			Precision, 1, []string{"us at best (ONE with L in block b1 from", "for 40 min)", "0.1 us wanted", "counts from 0.141 us"}},
-		{"room", func(*scheduler.Campaign, *scheduler.CadenceTarget) {}, nil,
-			Fits, 1, []string{"There is room: ONE with L in block b1 from 2027-01-18 00:15 UTC for 20 min would earn 3.00"}},
 		{"another scan in its place", func(c *scheduler.Campaign, _ *scheduler.CadenceTarget) { c.Blocks[0].End = after(1.2) },
 			[]scheduler.Scan{observed(other, "b1", 0.5, 40, earning("none", 9))},
 			Displaced, 1, []string{"in place of SIM J0842+4404 at 00:30 (earns 0.00)", "gain 3.00"}},
@@ -99,6 +97,16 @@ func equatorial(t *scheduler.Telescope, lo, hi float64) {
 func transit(t *scheduler.Telescope, halfMin float64) {
 	t.Mount, t.AzimuthRangeDeg, t.RateAzDegS = scheduler.MountTransit, [2]float64{}, 0
 	t.TrackHalfMin = halfMin
+}
+
+func TestWhereThereIsRoom(t *testing.T) {
+	c := lone()
+	wantScan(c)
+	list := explained(t, c, "cad#1")
+	if len(list) != 1 {
+		t.Fatalf("%d reasons: %v", len(list), list)
+	}
+	says(t, list[0], Fits, 1, "There is room: ONE with L in block b1 from 2027-01-18 00:15 UTC for 20 min would earn 3.00")
 }
 
 // Blocks that fail alike make one reason, told by the nearest; the reason that

@@ -15,7 +15,7 @@ import (
 	"cadencewright/testdata"
 )
 
-// problemOf is one of the repository's campaigns over its own horizon. It is
+// problemOf is one of the repository's campaigns over its week. It is
 // built once for all tests, which only read it.
 func problemOf(t testing.TB, name string) *feasible.Problem {
 	t.Helper()
@@ -28,7 +28,11 @@ func problemOf(t testing.TB, name string) *feasible.Problem {
 		if err != nil {
 			return nil, err
 		}
-		return feasible.Build(c, scheduler.Horizon{From: c.Start, To: c.End})
+		h := scheduler.Horizon{From: c.Start, To: c.End}
+		if name == "demo" { // months long
+			h = scheduler.DefaultHorizon(c)
+		}
+		return feasible.Build(c, h)
 	})
 	if err != nil {
 		t.Fatal(err)
@@ -98,7 +102,7 @@ func thinned(p *feasible.Problem, plan *scheduler.Plan) *scheduler.Plan {
 
 // Every unmet unit has a reason with a text, and the list is the planner's.
 func TestEveryUnmetUnitHasAReason(t *testing.T) {
-	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1", "large-1"} {
+	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1", "large-1", "demo"} {
 		t.Run(name, func(t *testing.T) {
 			t.Parallel()
 			p := problemOf(t, name)
@@ -130,7 +134,7 @@ func TestEveryUnmetUnitHasAReason(t *testing.T) {
 // Where a reason says what a place would earn and what would have to go, doing
 // just that must give a valid plan with just that score.
 func TestPlacesAreAsTheReasonsSay(t *testing.T) {
-	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1"} {
+	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1", "demo"} {
 		t.Run(name, func(t *testing.T) {
 			t.Parallel()
 			p := problemOf(t, name)

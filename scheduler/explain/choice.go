@@ -19,6 +19,10 @@ type choice struct {
 
 func (q *question) newChoice() *choice { return &choice{q: q, net: math.Inf(-1)} }
 
+// The net is what the plan's score would change by. Below 0 the planner was
+// right to leave the unit out, as far as this way of serving it goes; above 0
+// it has not searched for long enough, and the reason says so.
+
 // consider weighs scans that would together earn gain.
 func (c *choice) consider(gain float64, options ...*option) {
 	c.possible++

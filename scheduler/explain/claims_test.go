@@ -51,16 +51,16 @@ func onlyGoal(c *scheduler.Campaign, id string) *scheduler.Campaign {
 // mostOf is the most that candidates of a campaign could earn from one unit
 // alone, as the independent check of certificates has it: the bound at prices
 // that make all other units of its goal worthless.
-func mostOf(t *testing.T, c *scheduler.Campaign, goal, unit string) float64 {
+func mostOf(t *testing.T, c *scheduler.Campaign, h scheduler.Horizon, goal, unit string) float64 {
 	t.Helper()
 	const dear = 1000
 	only := onlyGoal(c, goal)
-	plan := &scheduler.Plan{Campaign: c.Name, From: c.Start, To: c.End, Certificate: scheduler.Certificate{Prices: map[string]float64{}}}
+	plan := &scheduler.Plan{Campaign: c.Name, From: h.From, To: h.To, Certificate: scheduler.Certificate{Prices: map[string]float64{}}}
 	free, err := verify.Check(only, plan, verify.Options{SkipBound: true})
 	if err != nil {
 		t.Fatal(err)
 	}
-	p, err := feasible.Build(only, scheduler.Horizon{From: c.Start, To: c.End})
+	p, err := feasible.Build(only, h)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -82,7 +82,7 @@ func mostOf(t *testing.T, c *scheduler.Campaign, goal, unit string) float64 {
 // anything to the unit; where they say that something stands in its place,
 // some must be.
 func TestImpossibleUnitsHaveNoCandidates(t *testing.T) {
-	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1"} {
+	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1", "demo"} {
 		t.Run(name, func(t *testing.T) {
 			t.Parallel()
 			p := problemOf(t, name)
@@ -98,7 +98,7 @@ func TestImpossibleUnitsHaveNoCandidates(t *testing.T) {
 				}
 				no := impossible(u.Reasons)
 				seen[no]++
-				if most := mostOf(t, p.Campaign, u.Goal, u.Unit); no != (math.Abs(most) < 1e-6) {
+				if most := mostOf(t, p.Campaign, p.Horizon, u.Goal, u.Unit); no != (math.Abs(most) < 1e-6) {
 					t.Errorf("%s: candidates are worth up to %g, and the reasons are %v", u.Unit, most, u.Reasons)
 				}
 			}

@@ -70,7 +70,8 @@ func Unmet(p *feasible.Problem, plan *scheduler.Plan) []scheduler.Unmet {
 	return list
 }
 
-// explainer is a problem and a plan for it.
+// explainer is a problem and a plan for it, put on the problem's blocks and
+// units. It does not change while it explains.
 type explainer struct {
 	*feasible.Problem
 	index   *scheduler.Index
@@ -89,7 +90,9 @@ func (e *explainer) times(ui int) int {
 	return min(n, 1) // several scans may share it
 }
 
-// finding is one cause at one block, or of the unit as a whole.
+// finding is one cause at one block, or of the unit as a whole. Its text is made
+// only for the finding that speaks for all of its code, when their number is
+// known: a campaign has thousands of findings and some hundred reasons.
 type finding struct {
 	code  scheduler.ReasonCode
 	about string                 // band that it is about, for goals that want two
@@ -123,9 +126,9 @@ func (q *question) look() {
 type question struct {
 	*explainer
 	unit     *units.Unit
-	ui       int
-	goal     *units.Goal
-	wants    *scheduler.Goal
+	ui       int             // its place in Units.Units
+	goal     *units.Goal     // in the planner's form: indices and minutes
+	wants    *scheduler.Goal // as the campaign has it: names
 	source   *scheduler.Source
 	about    string // of what is found from here on
 	findings []finding

@@ -76,6 +76,8 @@ func (q *question) freeSteps(b *feasible.Block) []bool {
 			}
 		}
 	}
+	// The same rules as for candidates: setup and calibration after the block's
+	// start and after each lost part, and the least gap on either side of a pin.
 	ready := (t.SetupS + t.CalS) / 60
 	start := units.Minutes(bl.Start)
 	taken(start-1, start+ready)

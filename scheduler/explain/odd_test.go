@@ -7,6 +7,7 @@ import (
 
 	"cadencewright/scheduler"
 	"cadencewright/scheduler/feasible"
+	"cadencewright/scheduler/solve"
 
 	"pgregory.net/rapid"
 )
@@ -147,4 +148,55 @@ func TestAnyPlan(t *testing.T) {
 			}
 		}
 	})
+}
+
+// A horizon without a block leaves one cause for every unit.
+func TestHorizonWithoutBlocks(t *testing.T) {
+	c := problemOf(t, "medium-1").Campaign
+	p, err := feasible.Build(c, scheduler.Horizon{From: c.End.AddDate(0, 0, 7), To: c.End.AddDate(0, 0, 14)})
+	if err != nil {
+		t.Fatal(err)
+	}
+	list := Unmet(p, emptyPlan(p))
+	if len(list) != len(p.Units.Units) || len(list) == 0 {
+		t.Fatalf("%d of %d units", len(list), len(p.Units.Units))
+	}
+	for _, u := range list {
+		for _, r := range u.Reasons {
+			if r.Code != NoBlock && r.Code != NoPassage || r.Count != 0 {
+				t.Errorf("%s: %+v", u.Unit, r)
+			}
+		}
+		if len(u.Reasons) != 1 {
+			t.Errorf("%s: %d reasons", u.Unit, len(u.Reasons))
+		}
+	}
+}
+
+// Part of a campaign is explained by its own blocks alone.
+func TestTwoDaysOfAWeek(t *testing.T) {
+	c := problemOf(t, "medium-2").Campaign
+	h := scheduler.Horizon{From: c.Start.AddDate(0, 0, 2), To: c.Start.AddDate(0, 0, 4)}
+	p, err := feasible.Build(c, h)
+	if err != nil {
+		t.Fatal(err)
+	}
+	r, err := solve.Solve(p, solve.Options{Seed: 1, Effort: 10})
+	if err != nil {
+		t.Fatal(err)
+	}
+	list := Unmet(p, r.Plan)
+	if len(list) != len(r.Plan.Unmet) || len(list) == 0 {
+		t.Fatalf("%d units explained, %d unmet", len(list), len(r.Plan.Unmet))
+	}
+	for i, u := range list {
+		if u.Unit != r.Plan.Unmet[i].Unit || len(u.Reasons) == 0 {
+			t.Errorf("%s: %v", u.Unit, u.Reasons)
+		}
+		for _, reason := range u.Reasons {
+			if reason.Count > len(p.Blocks) {
+				t.Errorf("%s: %d blocks of %d: %s", u.Unit, reason.Count, len(p.Blocks), reason.Text)
+			}
+		}
+	}
 }

@@ -80,6 +80,11 @@ func (q *question) startsIn(b *feasible.Block, pl *feasible.Place, lo, hi float6
 	return false
 }
 
+// What an option costs is asked without planning anew: the scans that leave it
+// no room would go, and nothing else would move. A planner that shifts them, or
+// finds them another place, can do better; so the cost is one way to do it, and
+// not always the cheapest.
+
 // cost is what it takes to make room for an option: the scans that would have
 // to go, least in what they earn over the turns that the azimuth drive may
 // take. It is not possible where a pin is in the way.
@@ -90,7 +95,7 @@ func (e *explainer) cost(o *option) (displaced []*planned, possible bool) {
 	b := &e.Blocks[o.block]
 	lo, hi := b.Turns(o.place, o.start, o.steps)
 	best := math.Inf(1)
-	for turn := lo; turn <= hi; turn++ {
+	for turn := lo; turn <= hi; turn++ { // seldom more than two
 		list, ok := e.conflicts(b, o, 360*float64(turn))
 		if !ok {
 			continue
@@ -113,6 +118,8 @@ func (e *explainer) conflicts(b *feasible.Block, o *option, turnsDeg float64) ([
 		first++
 	}
 	var list []*planned
+	// Scans beyond the first that leaves room are further away in time, and
+	// have left each other room.
 	for i := first - 1; i >= 0; i-- {
 		x := row[i]
 		if roomFor(b, x.to, from, x.receiver != o.receiver, (o.startMin-x.endMin)*60) {

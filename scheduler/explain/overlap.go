@@ -16,6 +16,11 @@ type stretch struct {
 	lo, hi    float64
 }
 
+// Scans together have too many combinations to try them all, so it goes in two
+// steps: at which instants could enough telescopes be under way at once, which
+// is exact, and then, at some of those instants, which scan of each telescope
+// would cost least.
+
 // overlap explains a unit that wants the source on several telescopes at once.
 func (q *question) overlap() {
 	lo, hi := q.unit.Window()
@@ -109,7 +114,7 @@ func (q *question) telescopesAt(covers []stretch, lo, hi float64) []int {
 
 // placeTogether weighs the common times at which the unit could be served.
 func (q *question) placeTogether(list []reach, at []float64) {
-	const samples = 48
+	const samples = 48 // instants looked at, spread over all that would do
 	best, close := q.newChoice(), false
 	blocks := map[int]bool{}
 	for i := 0; i < len(at); i += 1 + len(at)/samples {

@@ -8,13 +8,17 @@ type offered struct {
 	loss float64
 }
 
+// Pairs are tried from samples of each band's options: of every run of starts
+// the two ends, which decide how near in time two bands come, and some between,
+// which decide what would have to make room.
+
 // pair explains a unit that wants both bands near each other in time.
 func (q *question) pair() {
 	lo, hi := q.unit.Window()
 	best := q.newChoice()
 	used := map[int]bool{}
-	var sides [2][]offered
-	var counts [2]int
+	var sides [2][]offered // by band
+	var counts [2]int      // blocks with any option
 	for i := range sides {
 		bit := uint32(1) << i
 		q.about = q.wants.Bands[i] + ": "

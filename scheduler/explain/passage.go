@@ -30,6 +30,7 @@ func (q *question) nextPassage() (units.Passage, bool) {
 		return units.Passage{}, false
 	}
 	w, from := goal.Windows[q.unit.K], q.Horizon.To
+	// In two orbits it passes at least once whole.
 	to := from.Add(time.Duration(2 * q.source.Binary.PbD * 24 * float64(time.Hour)))
 	if limit := scheduler.EndInstant.Add(-48 * time.Hour); to.After(limit) {
 		to = limit

@@ -97,6 +97,10 @@ func poses(pl *feasible.Place, start, steps int, turnsDeg float64) (from, to pos
 	return pose{pl.Axis1[i] + turnsDeg, pl.Axis2[i]}, pose{pl.Axis1[j] + turnsDeg, pl.Axis2[j]}
 }
 
+// A reason compares what a unit would earn with what other scans do earn, so
+// the plan's own earnings are booked as they are listed; whether they are right
+// is for a check to say.
+
 // book notes what a scan earns.
 func (e *explainer) book(x *planned) {
 	for _, earn := range x.scan.Earns {

@@ -10,6 +10,11 @@ import (
 	"cadencewright/scheduler/units"
 )
 
+// Texts are one sentence or two, with units at every number: degrees and
+// microseconds as people write them, times in UTC to the minute, lengths of
+// time in the unit that suits them. They name telescopes, receivers and blocks
+// by their codes.
+
 // sentence is a format with its figures.
 func sentence(format string, args ...any) string { return fmt.Sprintf(format, args...) }
 
@@ -118,7 +123,7 @@ func (q *question) titled(o *option) string {
 // listed names scans of the plan with what each earns by itself; after the
 // third it counts the others.
 func (q *question) listed(scans []*planned) string {
-	const most = 3
+	const most = 3 // names; a longer list says nothing more that helps
 	var names []string
 	for i, x := range scans {
 		if i == most && len(scans) > most+1 {

@@ -76,6 +76,10 @@ func (t *telescope) trackHalfDeg(p sky.Place) float64 {
 	return t.TrackHalfMin / 4 / max(math.Cos(p.DecDeg*math.Pi/180), 1e-6)
 }
 
+// All limits are written as a value that must keep to one side of a limit, so
+// that a check and a candidate ask the same question with another tolerance,
+// and a violation can show both numbers.
+
 // excess is how far a place is beyond the limit, in degrees of the sky; not
 // above 0: inside. Hour angle shrinks toward the pole on a transit mount.
 func (l limit) excess(p sky.Place) float64 {
@@ -121,6 +125,8 @@ func (k *checker) checkMotor(s *scan, places []sky.Place) {
 	for i, p := range places {
 		az[i], highest = p.AzDeg, max(highest, p.ElDeg)
 	}
+	// The drive follows the sky the short way from instant to instant; the plan
+	// chooses only how many whole turns it has at the start.
 	path := sky.UnwrapDeg(az, nil)
 	slack := k.options.LimitDeg / math.Cos(min(highest, 89.9)*math.Pi/180)
 	turn := 0.0
@@ -132,7 +138,7 @@ func (k *checker) checkMotor(s *scan, places []sky.Place) {
 			k.badScan(s, KindMotorAz, figures{*listed, path[0], "deg"},
 				"motor azimuth %.4f deg is not the azimuth %.4f deg plus whole turns", *listed, path[0])
 		}
-		if math.IsNaN(turn) || math.IsInf(turn, 0) {
+		if math.IsNaN(turn) || math.IsInf(turn, 0) { // go on without a turn, as if none were given
 			turn = 0
 		}
 	}

@@ -6,6 +6,12 @@ import (
 	"cadencewright/scheduler"
 )
 
+// The plan says which scans earn from which unit; the check does not look for a
+// better distribution. It asks whether those scans can, by the rules of the
+// unit's kind, and what that is worth. Where they cannot, the unit earns
+// nothing (a cadence unit: what its first scan is worth; a phase window: what
+// those of its scans are worth that have an orbit).
+
 // taker is a scan that says it earns from a unit.
 type taker struct {
 	scan  *scan
@@ -100,6 +106,8 @@ func (k *checker) earnCadence(u *unit, list []taker, claimed float64, when *msec
 func (k *checker) earnPhase(u *unit, list []taker) (float64, bool) {
 	slack := lengthOf(k.options.TimeS, second)
 	reach := make([][]int, len(list))
+	// A scan of a short orbit may cover several passages, so which scan stands
+	// for which orbit is a matching.
 	for i, t := range list {
 		for j, p := range u.passages {
 			if p.coveredBy(t.scan.start, t.scan.end, u.goal.dwell, slack) {
@@ -156,7 +164,7 @@ func matched(reach [][]int, passages int) int {
 // earnOverlap checks that enough telescopes are under way together.
 func (k *checker) earnOverlap(u *unit, list []taker, when *msec) (float64, bool) {
 	g := u.goal
-	common := g.allBands()
+	common := g.allBands() // of all scans: they must share one
 	start, end := list[0].scan.start, list[0].scan.end
 	telescopes := map[*telescope]bool{}
 	for _, t := range list {
@@ -185,7 +193,7 @@ func (k *checker) earnOverlap(u *unit, list []taker, when *msec) (float64, bool)
 func (k *checker) earnPair(u *unit, list []taker, when *msec) (float64, bool) {
 	g := u.goal
 	first, last := list[0].scan.start, list[0].scan.start
-	var bands uint32
+	var bands uint32 // of any scan: they must make up both
 	for _, t := range list {
 		first, last = min(first, t.scan.start), max(last, t.scan.start)
 		bands |= g.labels(t.scan.receiver)

@@ -46,6 +46,9 @@ type unit struct {
 	passages []passage // phase windows: in orbits that are not yet counted
 }
 
+// Bands are bits, so that what scans have in common or make up together is a
+// single operation. A goal has at most 20.
+
 // bands is the goal's bands that a receiver can give it, bit i for the i-th;
 // none where its telescope is not allowed or it does not detect the source.
 func (g *goal) bands(r *receiver) uint32 {
@@ -150,7 +153,9 @@ func (m *model) addGroup(g *group) {
 	g.goal.source.groups = append(g.goal.source.groups, g)
 }
 
-// addDue derives the due windows of a goal (section 5).
+// addDue derives the due windows of a goal (section 5): the first when it is due
+// next, or at the horizon's start if that is past, and one an interval from
+// there on. Urgency is for the first alone; the others presume it is served.
 func (m *model) addDue(g *goal) error {
 	g.source = m.sources[g.Source]
 	due, urgency := m.from, 3.0
@@ -186,8 +191,9 @@ func (g *goal) loadOfUnit() float64 {
 	return 1
 }
 
-// timeliness is v at an instant: 1 when due, falling to a half a little early
-// and to 0.4 one interval late, and 0 beyond.
+// timeliness is v at an instant: 1 when due, falling to a half at the earliest
+// that counts and toward 0.4 one interval late, and 0 beyond. The early end
+// belongs to the window, the late end to what comes after it.
 func (u *unit) timeliness(t msec) float64 {
 	late := t - u.due
 	switch {

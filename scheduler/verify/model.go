@@ -15,14 +15,19 @@ type model struct {
 	campaign *scheduler.Campaign
 	horizon  scheduler.Horizon
 	from, to msec // the horizon
-	grid     msec
+	grid     msec // step of the planning grid
+
+	// By name, as the files have them.
 
 	telescopes map[string]*telescope
 	sources    map[string]*source
-	blocks     []*block // that start in the horizon, in time order
-	blockByID  map[string]*block
-	pins       []*pin // in those blocks
 
+	blocks    []*block // that start in the horizon, in time order
+	blockByID map[string]*block
+	pins      []*pin // in those blocks
+
+	// What can be earned. A unit's index is its place in units; prices, takers
+	// and the like are slices by that index.
 	groups []*group
 	units  []*unit
 	byName map[string]*unit
@@ -51,7 +56,8 @@ type source struct {
 	groups  []*group
 	history []*made // counted and before the horizon, by start
 
-	// radiometer by receiver index.
+	// One a receiver of the campaign, by its index: what the sky, the pulsar
+	// and the receiver make of a second of time is asked for millions of times.
 	radiometer []sensitivity.Radiometer
 }
 
@@ -80,7 +86,8 @@ type pin struct {
 	start, end msec
 }
 
-// newModel looks at a valid campaign over a horizon.
+// newModel looks at a valid campaign over a horizon. It trusts the campaign:
+// names resolve, numbers lie in their ranges, blocks of a telescope are apart.
 func newModel(c *scheduler.Campaign, h scheduler.Horizon) (*model, error) {
 	m := &model{campaign: c, horizon: h, from: instantOf(h.From), to: instantOf(h.To), grid: msec(c.GridMin) * minute,
 		telescopes: map[string]*telescope{}, sources: map[string]*source{}, blockByID: map[string]*block{}, byName: map[string]*unit{}}
@@ -198,5 +205,7 @@ func (b *block) hasReceiver(r *receiver) bool {
 // lost part, before a scan can begin.
 func (t *telescope) ready() msec { return lengthOf(t.SetupS+t.CalS, second) }
 
-// gap is the least time between two scans, travel left out, in grid steps.
+// gap is the least time between two scans, travel left out, in grid steps. The
+// model leaves travel and receiver changes out of the bound: it then holds for
+// every order of scans, and a block's best set is a simple programme.
 func (m *model) gap(t *telescope) int64 { return ceilDiv(lengthOf(t.SettleS+t.CalS, second), m.grid) }

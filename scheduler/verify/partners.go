@@ -30,6 +30,10 @@ func (g *goal) together() bool {
 	return g.kind == scheduler.KindOverlap || g.kind == scheduler.KindBandPair
 }
 
+// Partners are kept as runs of instants, not as scans: a certificate asks only
+// whether and when some candidate could be there. They are found for all blocks
+// before any candidate is appraised, since a partner may be in a later block.
+
 // findPartners goes through all candidates of the sources that have such goals.
 func (m *model) findPartners(o Options) (*partners, error) {
 	found := make([]*partnerLists, len(m.blocks))
@@ -169,7 +173,7 @@ func (p *partners) commonStarts(m *model, g *goal, own *telescope, bands uint32,
 // otherStarts are the grid instants in [lo, hi] at which a candidate could
 // start that makes a pair with one in the given bands.
 func (p *partners) otherStarts(g *goal, bands uint32, lo, hi int64) runs {
-	other := g.allBands() &^ bands
+	other := g.allBands() &^ bands // what this scan lacks
 	if other == 0 {
 		other = bands // a scan in both bands pairs with any
 	}

@@ -103,6 +103,7 @@ func (m *model) addPhase(g *goal, o *orbits) error {
 		if times == 0 {
 			continue
 		}
+		// The fewer orbits are missing, the less the next one is worth.
 		value := g.Priority * float64(remaining) / float64(w.Need)
 		u := &unit{name: fmt.Sprintf("%s@%d", g.ID, i), weight: float64(times) * value, value: value, times: times, load: float64(times)}
 		for _, p := range all {
@@ -114,6 +115,9 @@ func (m *model) addPhase(g *goal, o *orbits) error {
 	}
 	return nil
 }
+
+// A goal wants different orbits, so a second scan in one that was had adds
+// nothing; which scan had it does not matter.
 
 // orbitsHad are the orbits whose passage some scan of the history covers.
 func (g *goal) orbitsHad(history []*made, all []passage) map[int]bool {

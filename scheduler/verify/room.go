@@ -15,6 +15,7 @@ func (k *checker) checkBlocks() error {
 		byBlock[s.block] = append(byBlock[s.block], s)
 	}
 	for _, b := range k.blocks {
+		// A plan's list may be in any order; time decides who are neighbours.
 		mine := byBlock[b]
 		sortByStart(mine, func(s *scan) msec { return s.start })
 		for i, s := range mine {
@@ -84,6 +85,7 @@ func (t *telescope) slewS(from, to pose) float64 {
 		first = sky.Axis{RateDegS: t.RateAzDegS, AccelDegS2: t.AccelAzDegS2}
 		second = sky.Axis{RateDegS: t.RateElDegS, AccelDegS2: t.AccelElDegS2}
 	case scheduler.MountEquatorial:
+		// In hour angle the sky stands still, so travel is what the axis turns.
 		first = sky.Axis{RateDegS: t.RateHADegS, AccelDegS2: t.AccelHADegS2}
 		second = sky.Axis{RateDegS: t.RateDecDegS, AccelDegS2: t.AccelDecDegS2}
 	default: // a transit mount waits for the sky to turn

@@ -24,6 +24,9 @@ func (s *scan) name() string {
 	return fmt.Sprintf("%s with %s in block %s at %s", s.source.Name, s.receiver.Code, s.block.ID, at(s.start))
 }
 
+// Everything that a scan refers to is looked up once, and a scan that refers to
+// nothing is left out of all later rules: one violation says enough of it.
+
 // readScans resolves the names of every scan and checks what a scan is by
 // itself. A scan that cannot be understood counts for nothing from here on.
 func (k *checker) readScans() {

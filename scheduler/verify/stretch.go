@@ -109,6 +109,8 @@ func (v *view) look(f *field, s *source) bool {
 	slices.Sort(v.lengths)
 	v.lengths = slices.Compact(v.lengths)
 
+	// Most sources are down in most blocks, and the sine of the elevation, which
+	// costs little, tells.
 	v.sinEl = f.window.SinElevation(s.star, v.sinEl)
 	if v.maxSinEl() >= math.Sin((f.telescope.ElevationMinDeg-0.001)*math.Pi/180) {
 		f.window.Track(s.star, &v.track)
@@ -162,6 +164,10 @@ func (v *view) up(want []limit, i int64) bool {
 	}
 	return true
 }
+
+// A motor range wider than a turn allows some azimuths twice, and a scan may
+// then begin in either. What it may not do is unwind on the way, so the parts
+// that one number of turns can follow are looked for one number at a time.
 
 // addFollowed adds the parts of a stretch that the motor azimuth can follow
 // without unwinding: for each whole number of turns the parts that stay inside

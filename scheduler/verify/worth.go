@@ -67,6 +67,9 @@ func (a *appraiser) addUpInfo(r *receiver) {
 	}
 }
 
+// Of one source and length only the best receiver at each start matters, since
+// a block's programme takes one scan at a time; so does only the best source.
+
 // addLength appraises the candidates of one source, receiver and length.
 func (a *appraiser) addLength(r *receiver, length int64, starts runs) {
 	first := a.field.first
@@ -152,6 +155,8 @@ func (a *appraiser) offerPhase(u *unit, length int64, starts runs) {
 		if p.leave < lo || p.enter > hi+long || long < needs {
 			continue
 		}
+		// Late enough that the passage has begun, and early enough that it goes
+		// on, for as long as is needed before the scan or the passage ends.
 		from, to := ceilDiv(p.enter+needs-long, a.field.grid), floorDiv(p.leave-needs, a.field.grid)
 		for _, s := range starts.within(from, to) {
 			for at := s.lo; at <= s.hi; at++ {

@@ -1,5 +1,7 @@
 -- +goose Up
 
+-- Somebody who can sign in: by password, or without one by link only.
+-- telescopes are those that an observer may report for; empty: all.
 create table person (
     id            bigint generated always as identity primary key,
     name          text not null constraint person_name_filled check (name <> ''),
@@ -28,7 +30,10 @@ create table sign_in_link (
     expires_at timestamptz not null,
     used_at    timestamptz
 );
+create index sign_in_link_of_person on sign_in_link (person_id);
 
+-- A key of a control script. telescope is a code, not a reference: the key
+-- outlives a change of the live campaign.
 create table api_key (
     id           bigint generated always as identity primary key,
     name         text not null constraint api_key_name_filled check (name <> ''),
@@ -41,7 +46,8 @@ create table api_key (
 );
 create unique index api_key_name_unique on api_key (lower(name)) where revoked_at is null;
 
--- Failed attempts to sign in, to slow down guessing.
+-- Failed attempts to sign in, to slow down guessing; subject is a name or an
+-- address.
 create table sign_in_failure (
     id      bigint generated always as identity primary key,
     subject text not null,
@@ -49,10 +55,11 @@ create table sign_in_failure (
 );
 create index sign_in_failure_of on sign_in_failure (subject, at);
 
--- Every change: who, when, what, before and after.
+-- Every change: who, when, what, before and after; written in the transaction
+-- of the change. What concerns people and keys belongs to no campaign.
 create table journal (
     id          bigint generated always as identity primary key,
-    campaign_id bigint references campaign on delete set null,
+    campaign_id bigint references campaign,
     at          timestamptz not null,
     actor       text not null,
     action      text not null,
@@ -62,28 +69,31 @@ create table journal (
 );
 create index journal_of_campaign on journal (campaign_id, id desc);
 
--- The answer to a request that carried an Idempotency-Key, kept so that the
--- same request again gets the same answer.
+-- The answer to a request that carried an Idempotency-Key, kept for some days so
+-- that the same request again gets the same answer. request_hash tells another
+-- request under the same key.
 create table idempotency (
     actor        text not null,
     key          text not null,
     request_hash bytea not null,
-    status       integer not null,
     answer       jsonb not null,
     at           timestamptz not null,
     primary key (actor, key)
 );
+create index idempotency_by_time on idempotency (at);
 
--- A planning job as people see it; the queue's own rows are in schema river.
+-- A planning job as people see it, with its progress and the best score and
+-- bound so far; the queue's own rows are in schema river. A horizon has at most
+-- one job under way.
 create table plan_job (
     id          bigint generated always as identity primary key,
-    campaign_id bigint not null references campaign on delete cascade,
-    horizon     tstzrange not null,
+    campaign_id bigint not null references campaign,
+    horizon     tstzrange not null constraint plan_job_horizon check (not isempty(horizon)),
     state       text not null constraint plan_job_state check (state in ('queued', 'running', 'done', 'failed', 'cancelled')),
     effort      bigint not null default 0,
     effort_of   bigint not null default 0,
-    score       double precision not null default 0,
-    bound       double precision,
+    score       finite not null default 0,
+    bound       finite,
     seed        bigint not null,
     plan_id     bigint references plan on delete set null,
     problem     text not null default '',
@@ -93,6 +103,7 @@ create table plan_job (
     changed_at  timestamptz not null
 );
 create unique index plan_job_one_active on plan_job (campaign_id, horizon) where state in ('queued', 'running');
+create index plan_job_by_horizon on plan_job (campaign_id, horizon, id desc);
 
 -- +goose Down
 drop table plan_job, idempotency, journal, sign_in_failure, api_key, sign_in_link, session, person;

@@ -40,31 +40,39 @@ func (e *StaleError) Unwrap() error { return scheduler.ErrStale }
 
 // constraints gives people's words for a broken constraint.
 var constraints = map[string]FieldError{
-	"campaign_name_unique":   {"name", "a campaign of that name is already there", scheduler.ErrConflict},
-	"campaign_one_live":      {"live", "another campaign is live", scheduler.ErrConflict},
-	"telescope_code_unique":  {"code", "a telescope with that code is already there", scheduler.ErrConflict},
-	"receiver_code_unique":   {"code", "the telescope has a receiver with that code already", scheduler.ErrConflict},
-	"source_name_unique":     {"name", "a source of that name is already there", scheduler.ErrConflict},
-	"goal_code_unique":       {"id", "a goal with that id is already there", scheduler.ErrConflict},
-	"block_code_unique":      {"id", "a block with that id is already there", scheduler.ErrConflict},
-	"block_no_overlap":       {"start", "the block overlaps another block of its telescope", scheduler.ErrConflict},
-	"scan_no_overlap":        {"start", "the scan overlaps another scan of its telescope in the issued plan", scheduler.ErrConflict},
-	"plan_revision_unique":   {"revision", "another plan of this week was issued at the same moment", scheduler.ErrConflict},
-	"plan_one_issued":        {"horizon", "an issued plan of another stretch of time overlaps this one", scheduler.ErrConflict},
-	"plan_job_one_active":    {"week", "a planning job for this week is already under way", scheduler.ErrConflict},
-	"person_name_unique":     {"name", "a person of that name is already there", scheduler.ErrConflict},
-	"api_key_name_unique":    {"name", "a key of that name is already there", scheduler.ErrConflict},
-	"history_scan_unique":    {"scan", "the scan is in the history already", scheduler.ErrConflict},
-	"outcome_span":           {"ended_at", "the scan ends before it starts", scheduler.ErrInvalid},
-	"outcome_cause":          {"cause", "a lost scan needs a cause", scheduler.ErrInvalid},
-	"outcome_snr":            {"snr", "the signal-to-noise ratio must be above 0", scheduler.ErrInvalid},
-	"outcome_toa":            {"toa_us", "the TOA uncertainty must be above 0", scheduler.ErrInvalid},
-	"person_name_filled":     {"name", "a name is wanted", scheduler.ErrInvalid},
-	"api_key_name_filled":    {"name", "a name is wanted", scheduler.ErrInvalid},
-	"person_role":            {"role", "the role must be coordinator, observer or reader", scheduler.ErrInvalid},
-	"block_span":             {"end", "the end is not after the start", scheduler.ErrInvalid},
-	"campaign_span":          {"end", "the end is not after the start", scheduler.ErrInvalid},
-	"scan_telescope_id_fkey": {"telescope", "there is no such telescope", scheduler.ErrInvalid},
+	"campaign_name_unique":  {"name", "a campaign of that name is already there", scheduler.ErrConflict},
+	"campaign_one_live":     {"live", "another campaign is live", scheduler.ErrConflict},
+	"telescope_code_unique": {"code", "a telescope with that code is already there", scheduler.ErrConflict},
+	"receiver_code_unique":  {"code", "the telescope has a receiver with that code already", scheduler.ErrConflict},
+	"source_name_unique":    {"name", "a source of that name is already there", scheduler.ErrConflict},
+	"goal_code_unique":      {"id", "a goal with that id is already there", scheduler.ErrConflict},
+	"block_code_unique":     {"id", "a block with that id is already there", scheduler.ErrConflict},
+	"block_no_overlap":      {"start", "the block overlaps another block of its telescope", scheduler.ErrConflict},
+	"scan_no_overlap":       {"start", "the scan overlaps another scan of its telescope in the issued plan", scheduler.ErrConflict},
+	"plan_revision_unique":  {"revision", "another plan of this week was issued at the same moment", scheduler.ErrConflict},
+	"plan_one_issued":       {"horizon", "an issued plan of another stretch of time overlaps this one", scheduler.ErrConflict},
+	"plan_job_one_active":   {"week", "a planning job for this week is already under way", scheduler.ErrConflict},
+	"person_name_unique":    {"name", "a person of that name is already there", scheduler.ErrConflict},
+	"api_key_name_unique":   {"name", "a key of that name is already there", scheduler.ErrConflict},
+	"history_scan_unique":   {"scan", "the scan is in the history already", scheduler.ErrConflict},
+	"outcome_span":          {"ended_at", "the scan ends before it starts", scheduler.ErrInvalid},
+	"outcome_cause":         {"cause", "a lost scan needs a cause", scheduler.ErrInvalid},
+	"outcome_snr":           {"snr", "the signal-to-noise ratio must be above 0", scheduler.ErrInvalid},
+	"outcome_toa":           {"toa_us", "the TOA uncertainty must be above 0", scheduler.ErrInvalid},
+	"person_name_filled":    {"name", "a name is wanted", scheduler.ErrInvalid},
+	"api_key_name_filled":   {"name", "a name is wanted", scheduler.ErrInvalid},
+	"person_role":           {"role", "the role must be coordinator, observer or reader", scheduler.ErrInvalid},
+	"block_span":            {"end", "the end is not after the start", scheduler.ErrInvalid},
+	"campaign_span":         {"end", "the end is not after the start", scheduler.ErrInvalid},
+	"plan_horizon":          {"to", "the end is not after the start", scheduler.ErrInvalid},
+}
+
+// missing says what it is that is not there.
+func missing(err error, format string, args ...any) error {
+	if errors.Is(err, pgx.ErrNoRows) {
+		return scheduler.Errorf(scheduler.ErrNotFound, format, args...)
+	}
+	return classify(err)
 }
 
 // classify turns the database's errors into kinds that the service knows.

@@ -63,6 +63,6 @@ func (s *Store) Journal(ctx context.Context, campaign, before int64, limit int) 
 	if err != nil {
 		return nil, fault("journal", err)
 	}
-	list, err := pgx.CollectRows(rows, pgx.RowToStructByPos[Entry])
+	list, err := pgx.CollectRows(rows, pgx.RowToStructByName[Entry])
 	return list, classify(err)
 }

@@ -5,8 +5,6 @@ import (
 	"time"
 
 	"github.com/jackc/pgx/v5"
-
-	"cadencewright/scheduler"
 )
 
 // Person is somebody who can sign in.
@@ -24,30 +22,47 @@ type Person struct {
 const personColumns = `id, name, role, telescopes, password_hash, disabled, version, created_at`
 const qPersonAdd = `insert into person (name, role, telescopes, password_hash, created_at)
 values (@name, @role, @telescopes, @hash, @now) returning ` + personColumns
+const qPerson = `select ` + personColumns + ` from person where id = $1`
 const qPersonByName = `select ` + personColumns + ` from person where lower(name) = lower($1)`
 const qPeople = `select ` + personColumns + ` from person order by lower(name) limit 1000`
+const qPersonLock = `select ` + personColumns + ` from person where id = $1 for update`
+const qPersonSet = `update person set role = @role, telescopes = @telescopes, version = version + 1 where id = @id`
 const qPasswordSet = `update person set password_hash = $2, version = version + 1 where id = $1`
-const qSessionsEnd = `delete from session where person_id = $1`
 const qPersonDisable = `update person set disabled = $2, version = version + 1 where id = $1`
+const qSessionsEnd = `delete from session where person_id = $1`
+const qLinksEnd = `delete from sign_in_link where person_id = $1`
 
 // AddPerson makes a person; hash may be empty for one who signs in by link.
 func (s *Store) AddPerson(ctx context.Context, name, role string, telescopes []string, hash, actor string) (Person, error) {
 	var p Person
 	err := s.tx(ctx, func(t *tx) error {
-		var h *string
-		if hash != "" {
-			h = &hash
-		}
-		rows, err := t.q.Query(ctx, qPersonAdd, pgx.NamedArgs{"name": name, "role": role, "telescopes": notNil(telescopes), "hash": h, "now": t.now})
+		rows, err := t.q.Query(ctx, qPersonAdd, pgx.NamedArgs{"name": name, "role": role, "telescopes": notNil(telescopes),
+			"hash": only(hash != "", hash), "now": t.now})
 		if err != nil {
 			return err
 		}
-		if p, err = pgx.CollectExactlyOneRow(rows, pgx.RowToStructByPos[Person]); err != nil {
+		if p, err = pgx.CollectExactlyOneRow(rows, pgx.RowToStructByName[Person]); err != nil {
 			return err
 		}
-		return t.note(ctx, 0, actor, "add", "person "+name, nil, map[string]any{"role": role, "telescopes": telescopes})
+		return t.note(ctx, 0, actor, "add", "person "+name, nil, accessDoc{role, notNil(telescopes)})
 	})
 	return p, err
+}
+
+// accessDoc is what a person may do, as the journal keeps it.
+type accessDoc struct {
+	Role       string   `json:"role"`
+	Telescopes []string `json:"telescopes"`
+}
+
+// Person is the person with an id.
+func (s *Store) Person(ctx context.Context, id int64) (Person, error) {
+	rows, err := s.pool.Query(ctx, qPerson, id)
+	if err != nil {
+		return Person{}, fault("person", err)
+	}
+	p, err := pgx.CollectExactlyOneRow(rows, pgx.RowToStructByName[Person])
+	return p, missing(err, "there is no person %d", id)
 }
 
 // PersonByName is the person of a name, whatever its capitals.
@@ -56,221 +71,87 @@ func (s *Store) PersonByName(ctx context.Context, name string) (Person, error) {
 	if err != nil {
 		return Person{}, fault("person", err)
 	}
-	p, err := pgx.CollectExactlyOneRow(rows, pgx.RowToStructByPos[Person])
-	return p, classify(err)
+	p, err := pgx.CollectExactlyOneRow(rows, pgx.RowToStructByName[Person])
+	return p, missing(err, "there is no person named %q", name)
 }
 
-// People lists everybody.
+// People lists everybody, at most 1000.
 func (s *Store) People(ctx context.Context) ([]Person, error) {
 	rows, err := s.pool.Query(ctx, qPeople)
 	if err != nil {
 		return nil, fault("people", err)
 	}
-	list, err := pgx.CollectRows(rows, pgx.RowToStructByPos[Person])
+	list, err := pgx.CollectRows(rows, pgx.RowToStructByName[Person])
 	return list, classify(err)
 }
 
-// SetPassword gives a person a new password and ends all of their sessions.
-func (s *Store) SetPassword(ctx context.Context, person int64, hash, actor string) error {
-	return s.tx(ctx, func(t *tx) error {
-		if _, err := t.q.Exec(ctx, qPasswordSet, person, hash); err != nil {
-			return err
-		}
-		if _, err := t.q.Exec(ctx, qSessionsEnd, person); err != nil {
-			return err
-		}
-		return t.note(ctx, 0, actor, "password", "person", nil, map[string]int64{"person": person})
-	})
-}
-
-// SetDisabled shuts a person out, or lets them in again.
-func (s *Store) SetDisabled(ctx context.Context, person int64, disabled bool, actor string) error {
-	return s.tx(ctx, func(t *tx) error {
-		if _, err := t.q.Exec(ctx, qPersonDisable, person, disabled); err != nil {
-			return err
-		}
-		if _, err := t.q.Exec(ctx, qSessionsEnd, person); err != nil {
-			return err
-		}
-		return t.note(ctx, 0, actor, "disable", "person", nil, map[string]any{"person": person, "disabled": disabled})
-	})
-}
-
-// sessionLife and sessionIdle bound a session: in all, and without a request.
-const (
-	sessionLife = 30 * 24 * time.Hour
-	sessionIdle = 7 * 24 * time.Hour
-	// sessionTouch is how old the last noted request may be before another is
-	// noted: not every request writes.
-	sessionTouch = 5 * time.Minute
-)
-
-const qSessionAdd = `insert into session (token_hash, person_id, created_at, seen_at, expires_at) values (@hash, @person, @now, @now, @expires)`
-const qSessionGet = `select p.id, p.name, p.role, p.telescopes, p.password_hash, p.disabled, p.version, p.created_at, s.seen_at
-from session s join person p on p.id = s.person_id
-where s.token_hash = @hash and s.expires_at > @now and s.seen_at > @idle and not p.disabled`
-const qSessionTouch = `update session set seen_at = $2 where token_hash = $1`
-const qSessionEnd = `delete from session where token_hash = $1`
-const qSessionSweep = `delete from session where expires_at < $1 or seen_at < $2`
-
-// AddSession begins a session under the hash of its token.
-func (s *Store) AddSession(ctx context.Context, tokenHash []byte, person int64) error {
-	return s.tx(ctx, func(t *tx) error {
-		if _, err := t.q.Exec(ctx, qSessionSweep, t.now, t.now.Add(-sessionIdle)); err != nil {
-			return err
-		}
-		_, err := t.q.Exec(ctx, qSessionAdd, pgx.NamedArgs{"hash": tokenHash, "person": person, "now": t.now, "expires": t.now.Add(sessionLife)})
-		return err
-	})
-}
-
-// SessionPerson is whose session it is; ErrNotFound if it has ended.
-func (s *Store) SessionPerson(ctx context.Context, tokenHash []byte) (Person, error) {
-	now := s.clock()
-	var p Person
-	var seen time.Time
-	err := s.pool.QueryRow(ctx, qSessionGet, pgx.NamedArgs{"hash": tokenHash, "now": now, "idle": now.Add(-sessionIdle)}).Scan(
-		&p.ID, &p.Name, &p.Role, &p.Telescopes, &p.PasswordHash, &p.Disabled, &p.Version, &p.CreatedAt, &seen)
+// lockPerson reads a person whom the transaction is going to change.
+func (t *tx) lockPerson(ctx context.Context, id int64) (Person, error) {
+	rows, err := t.q.Query(ctx, qPersonLock, id)
 	if err != nil {
-		return Person{}, classify(err)
+		return Person{}, err
 	}
-	if now.Sub(seen) > sessionTouch {
-		if _, err := s.pool.Exec(ctx, qSessionTouch, tokenHash, now); err != nil {
-			return Person{}, fault("session", err)
-		}
-	}
-	return p, nil
+	p, err := pgx.CollectExactlyOneRow(rows, pgx.RowToStructByName[Person])
+	return p, missing(err, "there is no person %d", id)
 }
 
-// EndSession ends one session.
-func (s *Store) EndSession(ctx context.Context, tokenHash []byte) error {
-	_, err := s.pool.Exec(ctx, qSessionEnd, tokenHash)
-	return classify(err)
-}
-
-const qLinkAdd = `insert into sign_in_link (token_hash, person_id, expires_at) values (@hash, @person, @expires)`
-const qLinkUse = `update sign_in_link l set used_at = @now from person p
-where l.token_hash = @hash and l.used_at is null and l.expires_at > @now and p.id = l.person_id and not p.disabled
-returning p.id, p.name, p.role, p.telescopes, p.password_hash, p.disabled, p.version, p.created_at`
-
-// AddLink makes a sign-in link that can be used once, until it expires.
-func (s *Store) AddLink(ctx context.Context, tokenHash []byte, person int64, life time.Duration) error {
-	return s.tx(ctx, func(t *tx) error {
-		_, err := t.q.Exec(ctx, qLinkAdd, pgx.NamedArgs{"hash": tokenHash, "person": person, "expires": t.now.Add(life)})
-		return err
-	})
-}
-
-// UseLink uses a link up; ErrNotFound if it is unknown, used or too old.
-func (s *Store) UseLink(ctx context.Context, tokenHash []byte) (Person, error) {
+// SetAccess changes what a person may do. The version must be the given one, or
+// the error is a *StaleError. Sessions go on, with the new role.
+func (s *Store) SetAccess(ctx context.Context, person, version int64, role string, telescopes []string, actor string) (Person, error) {
 	var p Person
 	err := s.tx(ctx, func(t *tx) error {
-		rows, err := t.q.Query(ctx, qLinkUse, pgx.NamedArgs{"hash": tokenHash, "now": t.now})
-		if err != nil {
+		var err error
+		if p, err = t.lockPerson(ctx, person); err != nil {
 			return err
 		}
-		if p, err = pgx.CollectExactlyOneRow(rows, pgx.RowToStructByPos[Person]); err != nil {
+		if p.Version != version {
+			return &StaleError{"person " + p.Name, p.Version}
+		}
+		if _, err := t.q.Exec(ctx, qPersonSet, pgx.NamedArgs{"id": person, "role": role, "telescopes": notNil(telescopes)}); err != nil {
 			return err
 		}
-		return t.note(ctx, 0, p.Name, "sign in", "by link", nil, nil)
+		before := accessDoc{p.Role, p.Telescopes}
+		p.Role, p.Telescopes, p.Version = role, notNil(telescopes), p.Version+1
+		return t.note(ctx, 0, actor, "access", "person "+p.Name, before, accessDoc{p.Role, p.Telescopes})
 	})
 	return p, err
 }
 
-const qFailureAdd = `insert into sign_in_failure (subject, at) values ($1, $2)`
-const qFailures = `select count(*) from sign_in_failure where subject = $1 and at > $2`
-const qFailureSweep = `delete from sign_in_failure where at < $1`
+// SetPassword gives a person a new password and ends all of their sessions and
+// sign-in links.
+func (s *Store) SetPassword(ctx context.Context, person int64, hash, actor string) error {
+	return s.changePerson(ctx, person, actor, "password", nil, qPasswordSet, hash)
+}
 
-// NoteFailure notes a failed attempt to sign in.
-func (s *Store) NoteFailure(ctx context.Context, subject string) error {
+// SetDisabled shuts a person out, or lets them in again; either way their
+// sessions and sign-in links end.
+func (s *Store) SetDisabled(ctx context.Context, person int64, disabled bool, actor string) error {
+	return s.changePerson(ctx, person, actor, "disable", map[string]bool{"disabled": disabled}, qPersonDisable, disabled)
+}
+
+// changePerson sets one thing of a person and signs them out everywhere.
+func (s *Store) changePerson(ctx context.Context, person int64, actor, action string, after any, query string, value any) error {
 	return s.tx(ctx, func(t *tx) error {
-		if _, err := t.q.Exec(ctx, qFailureSweep, t.now.Add(-24*time.Hour)); err != nil {
-			return err
-		}
-		_, err := t.q.Exec(ctx, qFailureAdd, subject, t.now)
-		return err
-	})
-}
-
-// Failures counts the failed attempts of the last stretch of time.
-func (s *Store) Failures(ctx context.Context, subject string, within time.Duration) (int, error) {
-	var n int
-	err := s.pool.QueryRow(ctx, qFailures, subject, s.clock().Add(-within)).Scan(&n)
-	return n, classify(err)
-}
-
-// Key is a control script's key.
-type Key struct {
-	ID         int64
-	Name       string
-	Telescope  string
-	CreatedAt  time.Time
-	CreatedBy  string
-	LastUsedAt *time.Time
-	RevokedAt  *time.Time
-}
-
-const keyColumns = `id, name, telescope, created_at, created_by, last_used_at, revoked_at`
-const qKeyAdd = `insert into api_key (name, token_hash, telescope, created_at, created_by) values (@name, @hash, @telescope, @now, @actor) returning ` + keyColumns
-const qKeyGet = `select ` + keyColumns + ` from api_key where token_hash = $1 and revoked_at is null`
-const qKeyTouch = `update api_key set last_used_at = $2 where id = $1`
-const qKeys = `select ` + keyColumns + ` from api_key order by revoked_at is not null, lower(name), id limit 1000`
-const qKeyRevoke = `update api_key set revoked_at = $2 where lower(name) = lower($1) and revoked_at is null`
-
-// AddKey stores a key by its hash.
-func (s *Store) AddKey(ctx context.Context, name, telescope string, tokenHash []byte, actor string) (Key, error) {
-	var k Key
-	err := s.tx(ctx, func(t *tx) error {
-		rows, err := t.q.Query(ctx, qKeyAdd, pgx.NamedArgs{"name": name, "hash": tokenHash, "telescope": telescope, "now": t.now, "actor": actor})
+		p, err := t.lockPerson(ctx, person)
 		if err != nil {
 			return err
 		}
-		if k, err = pgx.CollectExactlyOneRow(rows, pgx.RowToStructByPos[Key]); err != nil {
+		if _, err := t.q.Exec(ctx, query, person, value); err != nil {
 			return err
 		}
-		return t.note(ctx, 0, actor, "add", "key "+name, nil, map[string]string{"telescope": telescope})
-	})
-	return k, err
-}
-
-// KeyByHash is the key of a token; ErrNotFound if there is none or it is revoked.
-func (s *Store) KeyByHash(ctx context.Context, tokenHash []byte) (Key, error) {
-	rows, err := s.pool.Query(ctx, qKeyGet, tokenHash)
-	if err != nil {
-		return Key{}, fault("key", err)
-	}
-	k, err := pgx.CollectExactlyOneRow(rows, pgx.RowToStructByPos[Key])
-	if err != nil {
-		return Key{}, classify(err)
-	}
-	if now := s.clock(); k.LastUsedAt == nil || now.Sub(*k.LastUsedAt) > sessionTouch {
-		if _, err := s.pool.Exec(ctx, qKeyTouch, k.ID, now); err != nil {
-			return Key{}, fault("key", err)
-		}
-	}
-	return k, nil
-}
-
-// Keys lists all keys, those in force first.
-func (s *Store) Keys(ctx context.Context) ([]Key, error) {
-	rows, err := s.pool.Query(ctx, qKeys)
-	if err != nil {
-		return nil, fault("keys", err)
-	}
-	list, err := pgx.CollectRows(rows, pgx.RowToStructByPos[Key])
-	return list, classify(err)
-}
-
-// RevokeKey ends a key.
-func (s *Store) RevokeKey(ctx context.Context, name, actor string) error {
-	return s.tx(ctx, func(t *tx) error {
-		tag, err := t.q.Exec(ctx, qKeyRevoke, name, t.now)
-		if err != nil {
+		if err := t.signOut(ctx, person); err != nil {
 			return err
 		}
-		if tag.RowsAffected() == 0 {
-			return scheduler.Errorf(scheduler.ErrNotFound, "there is no key %q in force", name)
-		}
-		return t.note(ctx, 0, actor, "revoke", "key "+name, nil, nil)
+		return t.note(ctx, 0, actor, action, "person "+p.Name, nil, after)
 	})
+}
+
+// signOut ends every session and sign-in link of a person.
+func (t *tx) signOut(ctx context.Context, person int64) error {
+	for _, q := range []string{qSessionsEnd, qLinksEnd} {
+		if _, err := t.q.Exec(ctx, q, person); err != nil {
+			return err
+		}
+	}
+	return nil
 }

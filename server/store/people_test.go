@@ -223,7 +223,7 @@ func TestFeed(t *testing.T) {
 		t.Fatal(err)
 	}
 	await("after a lost connection", "")
-	if _, err := s.Issue(ctx, plans[1].ID, plans[1].Version, "ada"); err != nil {
+	if _, err := s.Issue(ctx, plans[1].ID, plans[1].Version+1, "ada"); err != nil {
 		t.Fatal(err)
 	}
 	await("after another issue", "issued")
@@ -284,4 +284,3 @@ func TestMigrateTwiceAtOnce(t *testing.T) {
 		}
 	}
 }
-

@@ -2,6 +2,7 @@ package store
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"time"
 
@@ -53,6 +54,9 @@ func scanJob(r pgx.CollectableRow) (PlanJob, error) {
 	return j, err
 }
 
+// Enqueue hands a job to the queue in the transaction that makes it.
+type Enqueue = func(ctx context.Context, tx pgx.Tx, job int64) error
+
 const qJobAdd = `insert into plan_job (campaign_id, horizon, state, seed, asked_by, asked_at, changed_at)
 values (@campaign, @horizon, 'queued', @seed, @actor, @now, @now) returning ` + jobColumns
 
@@ -64,9 +68,17 @@ where campaign_id = $1 and state = 'running' and changed_at < $3`
 
 // AddJob makes a planning job and hands it to the queue by enqueue, in one
 // transaction. A week has at most one job under way: a second is a conflict.
-func (s *Store) AddJob(ctx context.Context, campaign int64, h scheduler.Horizon, seed int64, actor string, enqueue func(context.Context, pgx.Tx, int64) error) (PlanJob, error) {
+func (s *Store) AddJob(ctx context.Context, campaign int64, h scheduler.Horizon, seed int64, actor string, enqueue Enqueue) (PlanJob, error) {
+	if !h.From.Before(h.To) {
+		return PlanJob{}, &FieldError{"to", "the end is not after the start", scheduler.ErrInvalid}
+	}
 	var j PlanJob
 	err := s.tx(ctx, func(t *tx) error {
+		var name string
+		var revision int64
+		if err := t.q.QueryRow(ctx, qPlanCampaign, campaign).Scan(&name, &revision); err != nil {
+			return missing(err, "there is no campaign %d", campaign)
+		}
 		if _, err := t.q.Exec(ctx, qJobsDead, campaign, t.now, t.now.Add(-jobSilence)); err != nil {
 			return err
 		}
@@ -80,12 +92,16 @@ func (s *Store) AddJob(ctx context.Context, campaign int64, h scheduler.Horizon,
 		if err := t.note(ctx, campaign, actor, "plan", "week "+scheduler.WeekName(h.From), nil, map[string]int64{"job": j.ID}); err != nil {
 			return err
 		}
-		if err := t.tell(ctx, Change{Kind: "job", Campaign: campaign, Week: scheduler.WeekName(h.From), Job: j.ID}); err != nil {
+		if err := t.tellJob(ctx, campaign, h.From, j.ID); err != nil {
 			return err
 		}
 		return enqueue(ctx, t.q, j.ID)
 	})
 	return j, err
+}
+
+func (t *tx) tellJob(ctx context.Context, campaign int64, from time.Time, job int64) error {
+	return t.tell(ctx, Change{Kind: "job", Campaign: campaign, Week: scheduler.WeekName(from), Job: job})
 }
 
 const qJob = `select ` + jobColumns + ` from plan_job where id = $1`
@@ -98,7 +114,7 @@ func (s *Store) Job(ctx context.Context, id int64) (PlanJob, error) {
 		return PlanJob{}, fault("job", err)
 	}
 	j, err := pgx.CollectExactlyOneRow(rows, scanJob)
-	return j, classify(err)
+	return j, missing(err, "there is no planning job %d", id)
 }
 
 // LastJob is the newest job of a horizon, or nil.
@@ -115,50 +131,75 @@ func (s *Store) LastJob(ctx context.Context, campaign int64, h scheduler.Horizon
 }
 
 const qJobProgress = `update plan_job set state = 'running', effort = @effort, effort_of = @of, score = @score, bound = @bound, changed_at = @now
-where id = @id and state in ('queued', 'running') returning stop_wanted, horizon, campaign_id`
+where id = @id and state in ('queued', 'running') returning stop_wanted, lower(horizon), campaign_id`
 
 // JobProgress notes how far a job is, and tells whether it is wanted to stop.
-// A bound of 0 is none yet. A job that has ended meanwhile is ErrNotFound.
+// A bound of 0 is none yet. A job that is not under way is ErrNotFound.
 func (s *Store) JobProgress(ctx context.Context, id, effort, of int64, score, bound float64) (stop bool, err error) {
 	err = s.tx(ctx, func(t *tx) error {
-		var b *float64
-		if bound > 0 {
-			b = &bound
-		}
-		var h pgtype.Range[time.Time]
+		var from time.Time
 		var campaign int64
-		err := t.q.QueryRow(ctx, qJobProgress, pgx.NamedArgs{"id": id, "effort": effort, "of": of, "score": score, "bound": b, "now": t.now}).Scan(&stop, &h, &campaign)
+		err := t.q.QueryRow(ctx, qJobProgress, pgx.NamedArgs{"id": id, "effort": effort, "of": of, "score": score,
+			"bound": only(bound > 0, bound), "now": t.now}).Scan(&stop, &from, &campaign)
 		if err != nil {
-			return err
+			return missing(err, "planning job %d is not under way", id)
 		}
-		return t.tell(ctx, Change{Kind: "job", Campaign: campaign, Week: scheduler.WeekName(h.Lower), Job: id})
+		return t.tellJob(ctx, campaign, from, id)
 	})
 	return stop, err
 }
 
-const qJobEnd = `update plan_job set state = @state, problem = @problem, changed_at = @now where id = @id and state in ('queued', 'running') returning horizon, campaign_id`
+const qJobEnd = `update plan_job set state = @state, problem = @problem, changed_at = @now
+where id = @id and state in ('queued', 'running') returning lower(horizon), campaign_id`
 
-// EndJob ends a job that made no plan: failed with its reason, or cancelled.
+// EndJob ends a job that made no plan: failed with its reason, or cancelled. A
+// job that is not under way is ErrNotFound.
 func (s *Store) EndJob(ctx context.Context, id int64, state, problem string) error {
+	if state != JobFailed && state != JobCancelled {
+		return fmt.Errorf("planning job %d cannot end as %q without a plan", id, state)
+	}
 	return s.tx(ctx, func(t *tx) error {
-		var h pgtype.Range[time.Time]
+		var from time.Time
 		var campaign int64
-		if err := t.q.QueryRow(ctx, qJobEnd, pgx.NamedArgs{"id": id, "state": state, "problem": problem, "now": t.now}).Scan(&h, &campaign); err != nil {
-			return err
+		err := t.q.QueryRow(ctx, qJobEnd, pgx.NamedArgs{"id": id, "state": state, "problem": problem, "now": t.now}).Scan(&from, &campaign)
+		if err != nil {
+			return missing(err, "planning job %d is not under way", id)
 		}
-		return t.tell(ctx, Change{Kind: "job", Campaign: campaign, Week: scheduler.WeekName(h.Lower), Job: id})
+		return t.tellJob(ctx, campaign, from, id)
 	})
 }
 
-const qJobStop = `update plan_job set stop_wanted = true, changed_at = @now where id = @id and state in ('queued', 'running') returning campaign_id`
+const qJobStop = `update plan_job set stop_wanted = true where id = @id and state in ('queued', 'running') returning lower(horizon), campaign_id`
 
-// StopJob asks a job to stop and keep its best plan so far.
+// StopJob asks a job to stop and keep its best plan so far. A job that is not
+// under way is ErrNotFound.
 func (s *Store) StopJob(ctx context.Context, id int64, actor string) error {
 	return s.tx(ctx, func(t *tx) error {
+		var from time.Time
 		var campaign int64
-		if err := t.q.QueryRow(ctx, qJobStop, pgx.NamedArgs{"id": id, "now": t.now}).Scan(&campaign); err != nil {
+		if err := t.q.QueryRow(ctx, qJobStop, pgx.NamedArgs{"id": id}).Scan(&from, &campaign); err != nil {
+			return missing(err, "planning job %d is not under way", id)
+		}
+		if err := t.note(ctx, campaign, actor, "stop", fmt.Sprintf("planning job %d", id), nil, nil); err != nil {
 			return err
 		}
-		return t.note(ctx, campaign, actor, "stop", fmt.Sprintf("planning job %d", id), nil, nil)
+		return t.tellJob(ctx, campaign, from, id)
 	})
+}
+
+const qJobDone = `update plan_job set state = 'done', plan_id = @plan, score = @score, bound = @bound, changed_at = @now
+where id = @job and state in ('queued', 'running') returning id`
+const qJobState = `select state from plan_job where id = $1`
+
+// jobDone ends a job with its plan; a job that has ended already is a conflict.
+func (t *tx) jobDone(ctx context.Context, job, plan int64, p *scheduler.Plan) error {
+	err := t.q.QueryRow(ctx, qJobDone, pgx.NamedArgs{"plan": plan, "score": p.Score, "bound": p.Bound, "now": t.now, "job": job}).Scan(&job)
+	if !errors.Is(err, pgx.ErrNoRows) {
+		return err
+	}
+	var state string
+	if err := t.q.QueryRow(ctx, qJobState, job).Scan(&state); err != nil {
+		return missing(err, "there is no planning job %d", job)
+	}
+	return scheduler.Errorf(scheduler.ErrConflict, "planning job %d has ended already: it is %s", job, state)
 }

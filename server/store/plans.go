@@ -43,76 +43,91 @@ type PlanInfo struct {
 
 // PlanMeta is how a plan was made.
 type PlanMeta struct {
-	CampaignRevision int64
+	CampaignRevision int64 // 0: the campaign as it stands now
 	Seed             int64
 	Effort           int64
 	Status           string
 	Job              int64 // plan_job that made it; 0: none
 }
 
+const qPlanCampaign = `select name, revision from campaign where id = $1`
 const qPlanAdd = `insert into plan (campaign_id, horizon, state, campaign_revision, score, possible, bound, prices, unmet, seed, effort, status, made_at, made_by)
 values (@campaign, @horizon, 'draft', @revision, @score, @possible, @bound, @prices, @unmet, @seed, @effort, @status, @now, @actor) returning id`
 
-const qJobDone = `update plan_job set state = 'done', plan_id = @plan, score = @score, bound = @bound, changed_at = @now
-where id = @job and state in ('queued', 'running')`
-
 // SavePlan stores a plan as a new draft. With a job in meta, the job is done in
-// the same transaction.
+// the same transaction; a job that has ended already is a conflict, and then
+// nothing is stored. A plan that names things which the campaign has not is
+// invalid.
 func (s *Store) SavePlan(ctx context.Context, campaign int64, p *scheduler.Plan, meta PlanMeta, actor string) (int64, error) {
+	if !p.From.Before(p.To) {
+		return 0, &FieldError{"to", "the plan ends before it begins", scheduler.ErrInvalid}
+	}
 	var id int64
 	err := s.tx(ctx, func(t *tx) error {
-		err := t.q.QueryRow(ctx, qPlanAdd, pgx.NamedArgs{"campaign": campaign, "horizon": spanOf(p.From, p.To), "revision": meta.CampaignRevision,
-			"score": p.Score, "possible": p.Possible, "bound": p.Bound, "prices": notNilMap(p.Certificate.Prices), "unmet": notNil(p.Unmet),
-			"seed": meta.Seed, "effort": meta.Effort, "status": meta.Status, "now": t.now, "actor": actor}).Scan(&id)
-		if err != nil {
+		var err error
+		if id, err = t.addPlan(ctx, campaign, p, meta, actor); err != nil {
 			return err
 		}
-		if err := t.addScans(ctx, campaign, id, p.Scans); err != nil {
-			return err
-		}
+		week := scheduler.WeekName(p.From)
 		if meta.Job != 0 {
-			if _, err := t.q.Exec(ctx, qJobDone, pgx.NamedArgs{"plan": id, "score": p.Score, "bound": p.Bound, "now": t.now, "job": meta.Job}); err != nil {
+			if err := t.jobDone(ctx, meta.Job, id, p); err != nil {
+				return err
+			}
+			if err := t.tell(ctx, Change{Kind: "job", Campaign: campaign, Week: week, Job: meta.Job}); err != nil {
 				return err
 			}
 		}
-		if err := t.note(ctx, campaign, actor, "draft", fmt.Sprintf("plan %d of %s", id, scheduler.WeekName(p.From)), nil,
+		if err := t.note(ctx, campaign, actor, "draft", fmt.Sprintf("plan %d of %s", id, week), nil,
 			map[string]any{"score": p.Score, "bound": p.Bound, "scans": len(p.Scans)}); err != nil {
 			return err
 		}
-		return t.tell(ctx, Change{Kind: "draft", Campaign: campaign, Week: scheduler.WeekName(p.From), Plan: id})
+		return t.tell(ctx, Change{Kind: "draft", Campaign: campaign, Week: week, Plan: id})
 	})
 	return id, err
 }
 
-func notNilMap(m map[string]float64) map[string]float64 {
-	if m == nil {
-		return map[string]float64{}
+// addPlan writes the plan and its scans.
+func (t *tx) addPlan(ctx context.Context, campaign int64, p *scheduler.Plan, meta PlanMeta, actor string) (id int64, err error) {
+	var name string
+	var revision int64
+	if err := t.q.QueryRow(ctx, qPlanCampaign, campaign).Scan(&name, &revision); err != nil {
+		return 0, missing(err, "there is no campaign %d", campaign)
 	}
-	return m
+	if p.Campaign != name {
+		return 0, &FieldError{"campaign", fmt.Sprintf("the plan is for campaign %q, not for %q", p.Campaign, name), scheduler.ErrInvalid}
+	}
+	if meta.CampaignRevision != 0 {
+		revision = min(revision, meta.CampaignRevision)
+	}
+	prices := p.Certificate.Prices
+	if prices == nil {
+		prices = map[string]float64{}
+	}
+	err = t.q.QueryRow(ctx, qPlanAdd, pgx.NamedArgs{"campaign": campaign, "horizon": spanOf(p.From, p.To), "revision": revision,
+		"score": p.Score, "possible": p.Possible, "bound": p.Bound, "prices": prices, "unmet": unmetDocs(p.Unmet),
+		"seed": meta.Seed, "effort": meta.Effort, "status": meta.Status, "now": t.now, "actor": actor}).Scan(&id)
+	if err != nil {
+		return 0, err
+	}
+	names, err := t.namesOf(ctx, campaign, revision)
+	if err != nil {
+		return 0, err
+	}
+	return id, t.addScans(ctx, campaign, id, names, p.Scans)
 }
 
-const qTelescopeIDs = `select code, id from telescope where campaign_id = $1`
-
 // addScans writes the scans of a plan.
-func (t *tx) addScans(ctx context.Context, campaign, plan int64, scans []scheduler.Scan) error {
-	ids := map[string]int64{}
-	rows, err := t.q.Query(ctx, qTelescopeIDs, campaign)
-	if err != nil {
-		return err
-	}
-	var code string
-	var id int64
-	if _, err := pgx.ForEachRow(rows, []any{&code, &id}, func() error { ids[code] = id; return nil }); err != nil {
-		return err
-	}
-	cols := []string{"plan_id", "telescope_id", "block_code", "source_name", "receiver", "span", "minutes", "motor_az_deg", "pinned", "toa_us", "earns"}
-	_, err = t.q.CopyFrom(ctx, pgx.Identifier{"scan"}, cols, pgx.CopyFromSlice(len(scans), func(i int) ([]any, error) {
+func (t *tx) addScans(ctx context.Context, campaign, plan int64, of *names, scans []scheduler.Scan) error {
+	columns := []string{"campaign_id", "plan_id", "telescope_id", "block_id", "source_id", "receiver_id", "ephemeris_id",
+		"block_code", "source_name", "receiver", "span", "minutes", "motor_az_deg", "pinned", "toa_us", "earns"}
+	_, err := t.q.CopyFrom(ctx, pgx.Identifier{"scan"}, columns, pgx.CopyFromSlice(len(scans), func(i int) ([]any, error) {
 		x := &scans[i]
-		tel, ok := ids[x.Telescope]
-		if !ok {
-			return nil, &FieldError{"telescope", fmt.Sprintf("scan %d: there is no telescope %s", i, x.Telescope), scheduler.ErrInvalid}
+		id, err := of.scan(i, x)
+		if err != nil {
+			return nil, err
 		}
-		return []any{plan, tel, x.Block, x.Source, x.Receiver, spanOf(x.Start, x.End()), x.Minutes, x.MotorAzDeg, x.Pinned, x.TOAUs, notNil(x.Earns)}, nil
+		return []any{campaign, plan, id.telescope, id.block, id.source, id.receiver, id.ephemeris,
+			x.Block, x.Source, x.Receiver, spanOf(x.Start, x.End()), x.Minutes, x.MotorAzDeg, x.Pinned, x.TOAUs, earningDocs(x.Earns)}, nil
 	}))
 	return err
 }
@@ -127,19 +142,13 @@ func scanPlanInfo(r pgx.CollectableRow) (PlanInfo, error) {
 	var issued, superseded *time.Time
 	err := r.Scan(&x.ID, &x.CampaignID, &h, &x.State, &x.Revision, &x.Version, &x.CampaignRevision, &x.Score, &x.Possible, &x.Bound,
 		&x.Status, &x.Seed, &x.Effort, &x.MadeAt, &x.MadeBy, &issued, &x.IssuedBy, &superseded, &x.SupersededBy)
-	x.From, x.To = h.Lower, h.Upper
-	if issued != nil {
-		x.IssuedAt = *issued
-	}
-	if superseded != nil {
-		x.SupersededAt = *superseded
-	}
+	x.From, x.To, x.IssuedAt, x.SupersededAt = h.Lower, h.Upper, orZero(issued), orZero(superseded)
 	return x, err
 }
 
 const qPlansOf = `select ` + planColumns + ` from plan p where p.campaign_id = $1 and p.horizon = $2 order by p.id desc limit $3`
 
-// PlansOf lists the plans of a horizon, the newest first.
+// PlansOf lists the plans of a horizon, the newest first, at most 200.
 func (s *Store) PlansOf(ctx context.Context, campaign int64, h scheduler.Horizon, limit int) ([]PlanInfo, error) {
 	rows, err := s.pool.Query(ctx, qPlansOf, campaign, spanOf(h.From, h.To), min(max(limit, 1), 200))
 	if err != nil {
@@ -151,9 +160,7 @@ func (s *Store) PlansOf(ctx context.Context, campaign int64, h scheduler.Horizon
 
 const qPlan = `select ` + planColumns + ` from plan p where p.id = $1`
 const qPlanContent = `select p.prices, p.unmet, c.name from plan p join campaign c on c.id = p.campaign_id where p.id = $1`
-const qPlanScans = `select ` + scanColumns + ` from scan s join telescope t on t.id = s.telescope_id join plan p on p.id = s.plan_id
-left join lateral (select * from outcome o where o.scan_id = s.id order by o.id desc limit 1) o on true
-where s.plan_id = $1 order by lower(s.span), s.block_code, s.id`
+const qPlanScans = `select ` + scanColumns + scanTables + ` where s.plan_id = $1 order by s.id`
 
 // Plan reads a whole plan: its facts, its content, and its scans with their
 // states in the order of the content's.
@@ -162,37 +169,51 @@ func (s *Store) Plan(ctx context.Context, id int64) (PlanInfo, *scheduler.Plan, 
 	var scans []StoredScan
 	p := &scheduler.Plan{}
 	err := s.snapshot(ctx, func(t *tx) error {
-		rows, err := t.q.Query(ctx, qPlan, id)
-		if err != nil {
-			return err
-		}
-		if info, err = pgx.CollectExactlyOneRow(rows, scanPlanInfo); err != nil {
-			return err
-		}
-		if err := t.q.QueryRow(ctx, qPlanContent, id).Scan(&p.Certificate.Prices, &p.Unmet, &p.Campaign); err != nil {
-			return err
-		}
-		rows, err = t.q.Query(ctx, qPlanScans, id)
-		if err != nil {
-			return err
-		}
-		scans, err = pgx.CollectRows(rows, scanStored)
+		var err error
+		info, scans, err = t.loadPlan(ctx, id, p)
 		return err
 	})
-	p.From, p.To, p.Score, p.Possible, p.Bound = info.From, info.To, info.Score, info.Possible, info.Bound
-	p.Certificate.Bound = info.Bound
-	for i := range scans {
-		p.Scans = append(p.Scans, scans[i].Scan)
-	}
 	return info, p, scans, err
 }
 
-// PlanFacts is what is known of a plan, without its content.
-func (s *Store) PlanFacts(ctx context.Context, id int64) (PlanInfo, error) {
-	rows, err := s.pool.Query(ctx, qPlan, id)
+func (t *tx) loadPlan(ctx context.Context, id int64, p *scheduler.Plan) (info PlanInfo, scans []StoredScan, err error) {
+	if info, err = t.planFacts(ctx, qPlan, id); err != nil {
+		return info, nil, err
+	}
+	var unmet []unmetDoc
+	if err := t.q.QueryRow(ctx, qPlanContent, id).Scan(&p.Certificate.Prices, &unmet, &p.Campaign); err != nil {
+		return info, nil, err
+	}
+	rows, err := t.q.Query(ctx, qPlanScans, id)
 	if err != nil {
-		return PlanInfo{}, fault("plan", err)
+		return info, nil, err
+	}
+	if scans, err = pgx.CollectRows(rows, scanStored); err != nil {
+		return info, nil, err
+	}
+	p.From, p.To, p.Score, p.Possible, p.Bound = info.From, info.To, info.Score, info.Possible, info.Bound
+	p.Certificate.Bound, p.Unmet = info.Bound, unmetOf(unmet)
+	for i := range scans {
+		p.Scans = append(p.Scans, scans[i].Scan)
+	}
+	return info, scans, nil
+}
+
+// planFacts runs a query for one plan's facts.
+func (t *tx) planFacts(ctx context.Context, query string, id int64) (PlanInfo, error) {
+	rows, err := t.q.Query(ctx, query, id)
+	if err != nil {
+		return PlanInfo{}, err
 	}
 	info, err := pgx.CollectExactlyOneRow(rows, scanPlanInfo)
-	return info, classify(err)
+	return info, missing(err, "there is no plan %d", id)
+}
+
+// PlanFacts is what is known of a plan, without its content.
+func (s *Store) PlanFacts(ctx context.Context, id int64) (info PlanInfo, err error) {
+	err = s.snapshot(ctx, func(t *tx) error {
+		info, err = t.planFacts(ctx, qPlan, id)
+		return err
+	})
+	return info, err
 }

@@ -9,19 +9,11 @@ package store
 import (
 	"context"
 	"errors"
-	"fmt"
 	"time"
 
 	"github.com/jackc/pgx/v5"
 	"github.com/jackc/pgx/v5/pgtype"
 	"github.com/jackc/pgx/v5/pgxpool"
-	"github.com/jackc/pgx/v5/stdlib"
-	"github.com/pressly/goose/v3"
-	"github.com/pressly/goose/v3/lock"
-	"github.com/riverqueue/river/riverdriver/riverpgxv5"
-	"github.com/riverqueue/river/rivermigrate"
-
-	"cadencewright/migrations"
 )
 
 // Store is the database. It may be used from several goroutines.
@@ -93,46 +85,6 @@ func (s *Store) Pool() *pgxpool.Pool { return s.pool }
 
 // Stat is the pool's figures, for metrics.
 func (s *Store) Stat() *pgxpool.Stat { return s.pool.Stat() }
-
-// QueueSchema is the schema of the job queue's own tables.
-const QueueSchema = "river"
-
-// Migrate brings the schema up to date: ours, then the job queue's, under one
-// lock, so that several copies may start at once. It reports how many steps it
-// applied.
-func (s *Store) Migrate(ctx context.Context) (int, error) {
-	locker, err := lock.NewPostgresSessionLocker(lock.WithLockTimeout(1, 60))
-	if err != nil {
-		return 0, err
-	}
-	db := stdlib.OpenDBFromPool(s.pool)
-	defer db.Close()
-	p, err := goose.NewProvider(goose.DialectPostgres, db, migrations.FS, goose.WithSessionLocker(locker))
-	if err != nil {
-		return 0, fmt.Errorf("migrations: %w", err)
-	}
-	done, err := p.Up(ctx)
-	if err != nil {
-		return 0, fault("migrate", err)
-	}
-	m, err := rivermigrate.New(riverpgxv5.New(s.pool), &rivermigrate.Config{Schema: QueueSchema})
-	if err != nil {
-		return 0, fmt.Errorf("migrations of the job queue: %w", err)
-	}
-	// Copies that start together take turns here too.
-	err = s.tx(ctx, func(t *tx) error {
-		_, err := t.q.Exec(ctx, "select pg_advisory_xact_lock(7264981723)")
-		return err
-	})
-	if err != nil {
-		return 0, err
-	}
-	res, err := m.Migrate(ctx, rivermigrate.DirectionUp, nil)
-	if err != nil {
-		return 0, fault("migrate the job queue", err)
-	}
-	return len(done) + len(res.Versions), nil
-}
 
 // tx is one transaction: the only handle to the database in its scope, and one
 // instant for all that it writes.

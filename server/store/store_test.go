@@ -152,7 +152,10 @@ func TestIssueSupersedes(t *testing.T) {
 	if _, err := s.ReportOutcome(ctx, before[0].ID, store.Report{State: store.ScanDone}, "key", before[0].Telescope, store.Idempotency{}); err != nil {
 		t.Fatal(err)
 	}
-	second, err := s.Issue(ctx, plans[1].ID, plans[1].Version, "ada")
+	if _, err := s.Issue(ctx, plans[1].ID, plans[1].Version, "bo"); !errors.Is(err, scheduler.ErrStale) {
+		t.Errorf("issuing over a plan that was not seen: %v", err)
+	}
+	second, err := s.Issue(ctx, plans[1].ID, plans[1].Version+1, "ada")
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -168,8 +171,11 @@ func TestIssueSupersedes(t *testing.T) {
 	}
 	for _, x := range scans {
 		begun := !x.Start.After(now)
-		if x.Live != begun {
-			t.Errorf("scan at %s: live %v, begun %v", x.Start, x.Live, begun)
+		if begun && !x.Live && x.CarriedTo == 0 {
+			t.Errorf("scan at %s has begun and is neither live nor carried over", x.Start)
+		}
+		if !begun && x.Live {
+			t.Errorf("scan at %s of the old plan is live", x.Start)
 		}
 	}
 }

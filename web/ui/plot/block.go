@@ -100,7 +100,7 @@ func (c *canvas) rowCurve(a axis, b view.BlockRow, source string) {
 	if best.ElDeg > 0 {
 		label := view.ShortName(source) + " " + view.Fixed(best.ElDeg, 0) + "°"
 		x := min(max(a.x(best.At), rowX0+50), rowX1-50)
-		c.text("curve-label", x, max(y(best.ElDeg)-4, laneTop+11), "middle", label)
+		c.text("curve-label", x, laneTop+18, "middle", label)
 	}
 }
 
@@ -113,7 +113,7 @@ func (c *canvas) bar(a axis, s view.Scan, week string) {
 	w = max(w-1, 1.5) // a hair between neighbours
 	title := fmt.Sprintf("%s, %s, %s to %s UTC, %s, %s", s.Source, s.Receiver, view.Clock(s.Start), view.Clock(s.End),
 		stateWord(s), view.Micros(s.TOAUs))
-	c.tag("a", "class", "scan "+s.State, "href", ScanPath(week, s.ID), "data-t", strconv.FormatInt(s.Start.Unix(), 10), "aria-label", title)
+	c.tag("a", "class", "scan "+s.State, "href", ScanPath(week, s.ID), "data-t", strconv.FormatInt(s.Start.Unix(), 10))
 	c.WriteString("<title>")
 	c.WriteString(strings.NewReplacer("&", "&amp;", "<", "&lt;").Replace(title))
 	c.WriteString("</title>")

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"io"
 	"net"
 	"strings"
 
@@ -76,6 +77,7 @@ func missing(err error, format string, args ...any) error {
 }
 
 // classify turns the database's errors into kinds that the service knows.
+// Errors of no kind are faults of the program.
 func classify(err error) error {
 	if err == nil || scheduler.KindOf(err) != nil {
 		return err
@@ -85,45 +87,55 @@ func classify(err error) error {
 	}
 	var pg *pgconn.PgError
 	if errors.As(err, &pg) {
-		if f, ok := constraints[pg.ConstraintName]; ok {
-			return &f
-		}
-		switch {
-		case pg.Code == "40001" || pg.Code == "40P01": // serialisation, deadlock
-			return scheduler.Errorf(scheduler.ErrUnavailable, "the database was busy with another change; try again")
-		case pg.Code == "22021" || pg.Code == "22P05":
-			return scheduler.Errorf(scheduler.ErrInvalid, "a text holds a character that cannot be stored")
-		case pg.Code == "57014":
-			return scheduler.Errorf(scheduler.ErrUnavailable, "the database took too long")
-		case strings.HasPrefix(pg.Code, "57P") || strings.HasPrefix(pg.Code, "53") || strings.HasPrefix(pg.Code, "08"):
-			return unavailable(err)
-		}
-		return fmt.Errorf("database: %w", err)
+		return answered(pg, err)
 	}
-	var netErr net.Error
-	var connect *pgconn.ConnectError
-	if errors.As(err, &netErr) || errors.As(err, &connect) || pgconn.SafeToRetry(err) || strings.Contains(err.Error(), "conn closed") ||
-		strings.Contains(err.Error(), "closed pool") || strings.Contains(err.Error(), "unexpected EOF") {
-		if !errors.Is(err, context.Canceled) {
-			return unavailable(err)
-		}
+	if away(err) {
+		return unavailable(err)
 	}
 	return err
 }
 
-// fault is an error on the way to the database.
-func fault(what string, err error) error {
-	if k := scheduler.KindOf(classify(err)); k != nil {
-		return classify(err)
+// answered is an error that the database itself reports.
+func answered(pg *pgconn.PgError, err error) error {
+	if f, ok := constraints[pg.ConstraintName]; ok {
+		return &f
 	}
+	switch {
+	case pg.Code == "40001" || pg.Code == "40P01": // serialisation, deadlock
+		return scheduler.Errorf(scheduler.ErrUnavailable, "the database was busy with another change; try again")
+	case pg.Code == "22021" || pg.Code == "22P05": // bytes that are no text, or a zero among them
+		return scheduler.Errorf(scheduler.ErrInvalid, "a text holds a character that cannot be stored")
+	case pg.Code == "57014": // statement timeout
+		return scheduler.Errorf(scheduler.ErrUnavailable, "the database took too long")
+	case pg.Code == "53100":
+		return scheduler.Errorf(scheduler.ErrUnavailable, "the disk of the database is full: %w", err)
+	case strings.HasPrefix(pg.Code, "57P"), // it stops, or starts
+		strings.HasPrefix(pg.Code, "53"), // out of something
+		strings.HasPrefix(pg.Code, "08"), // connection
+		pg.Code == "25006":               // a standby, which only reads
+		return unavailable(err)
+	}
+	return fmt.Errorf("database: %w", err)
+}
+
+// away tells whether an error means that the database does not answer.
+func away(err error) bool {
 	if errors.Is(err, context.Canceled) {
-		return err
+		return false
 	}
-	var pg *pgconn.PgError
-	if errors.As(err, &pg) {
-		return fmt.Errorf("database: %s: %w", what, err)
+	var network net.Error
+	var connect *pgconn.ConnectError
+	return errors.As(err, &network) || errors.As(err, &connect) || pgconn.SafeToRetry(err) ||
+		errors.Is(err, io.EOF) || errors.Is(err, io.ErrUnexpectedEOF) || strings.Contains(err.Error(), "closed pool")
+}
+
+// fault is an error on the way to the database, with what was being done.
+func fault(what string, err error) error {
+	c := classify(err)
+	if scheduler.KindOf(c) != nil || errors.Is(c, context.Canceled) {
+		return c
 	}
-	return unavailable(err)
+	return fmt.Errorf("%s: %w", what, c)
 }
 
 // awayError is a database that does not answer; the cause is for the log.

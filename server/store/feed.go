@@ -3,7 +3,7 @@ package store
 import (
 	"context"
 	"encoding/json"
-	"errors"
+	"fmt"
 	"time"
 
 	"github.com/jackc/pgx/v5"
@@ -12,7 +12,7 @@ import (
 // Change is a line of the change feed: something that pages and scripts want
 // to know of at once. It says what to read again, not what it says now.
 type Change struct {
-	Kind      string `json:"kind"` // draft, issued, outcome, job
+	Kind      string `json:"kind"` // campaign, draft, issued, outcome, job; empty: anything may have changed
 	Campaign  int64  `json:"campaign"`
 	Week      string `json:"week,omitempty"`
 	Telescope string `json:"telescope,omitempty"`
@@ -34,28 +34,34 @@ func (t *tx) tell(ctx context.Context, c Change) error {
 	return err
 }
 
+// A listener that hears nothing asks whether the connection still stands: one
+// that died without a word would be silent for ever.
+const (
+	feedSilence = 20 * time.Second
+	feedAnswer  = 5 * time.Second
+)
+
 // Listen calls f for every change by any copy of the program until ctx ends.
-// After a lost connection it connects again, and calls f with an empty change
-// once: something may have been missed, so read everything again.
+// When it begins, and again after every lost connection, it calls f with an
+// empty change: something may have been missed, so read everything again.
 func (s *Store) Listen(ctx context.Context, f func(Change)) {
-	wait := 100 * time.Millisecond
+	const shortest, longest = 100 * time.Millisecond, 10 * time.Second
+	wait := shortest
 	for ctx.Err() == nil {
-		start := time.Now()
-		_ = s.listen(ctx, f) // it ends only by a lost connection or ctx
-		if ctx.Err() != nil {
-			return
-		}
-		if time.Since(start) > time.Minute {
-			wait = 100 * time.Millisecond
+		heard := false
+		_ = s.listen(ctx, func(c Change) { heard = true; f(c) }) // it ends only by a lost connection or ctx
+		if heard {
+			wait = shortest
 		}
 		select {
 		case <-ctx.Done():
 		case <-time.After(wait):
 		}
-		wait = min(2*wait, 10*time.Second)
+		wait = min(2*wait, longest)
 	}
 }
 
+// listen hears changes on one connection until it is lost.
 func (s *Store) listen(ctx context.Context, f func(Change)) error {
 	pooled, err := s.pool.Acquire(ctx)
 	if err != nil {
@@ -65,21 +71,40 @@ func (s *Store) listen(ctx context.Context, f func(Change)) error {
 	defer func() {
 		c, cancel := context.WithTimeout(context.WithoutCancel(ctx), time.Second)
 		defer cancel()
-		conn.Close(c)
+		_ = conn.Close(c) // nothing was left to be done on it
 	}()
 	if _, err := conn.Exec(ctx, "listen "+pgx.Identifier{channel}.Sanitize()); err != nil {
 		return err
 	}
 	f(Change{})
 	for {
-		n, err := conn.WaitForNotification(ctx)
+		c, err := hear(ctx, conn)
 		if err != nil {
 			return err
 		}
-		var c Change
-		if err := json.Unmarshal([]byte(n.Payload), &c); err != nil {
-			return errors.Join(errors.New("change feed"), err)
+		if c != nil {
+			f(*c)
 		}
-		f(c)
 	}
+}
+
+// hear waits for the next change; nil if there was none for a while and the
+// connection stands.
+func hear(ctx context.Context, conn *pgx.Conn) (*Change, error) {
+	quiet, cancel := context.WithTimeout(ctx, feedSilence)
+	defer cancel()
+	n, err := conn.WaitForNotification(quiet)
+	if err != nil {
+		if ctx.Err() != nil || quiet.Err() == nil {
+			return nil, err
+		}
+		answer, cancel := context.WithTimeout(ctx, feedAnswer)
+		defer cancel()
+		return nil, conn.Ping(answer)
+	}
+	var c Change
+	if err := json.Unmarshal([]byte(n.Payload), &c); err != nil {
+		return nil, fmt.Errorf("change feed: %w", err)
+	}
+	return &c, nil
 }

@@ -2,16 +2,21 @@ package server
 
 import (
 	"net/http"
+	"net/url"
 	"slices"
+	"strings"
 
 	"github.com/go-chi/chi/v5"
 
 	"cadencewright/scheduler"
 	"cadencewright/server/auth"
+	"cadencewright/server/logline"
 )
 
 // Who may call what. A route that stands in no row of this table answers
-// nobody: a test walks the router and fails for one that was forgotten.
+// nobody: a test walks the router and fails for one that was forgotten. A key
+// calls what names its own telescope in the path; where the path names a scan,
+// the handler sees whose it is.
 var access = []struct {
 	method, pattern string
 	roles           []auth.Role
@@ -27,8 +32,7 @@ var access = []struct {
 	{"GET", "/help", anyone},
 	{"GET", "/api/v1/openapi.json", anyone},
 	{"GET", "/api/v1/openapi.yaml", anyone},
-	{"GET", "/api/v1/openapi-3.0.json", anyone},
-	{"GET", "/api/v1/openapi-3.0.yaml", anyone},
+	{"GET", "/api/v1/problems", anyone},
 
 	{"GET", "/", people},
 	{"GET", "/weeks/{week}", people},
@@ -44,12 +48,16 @@ var access = []struct {
 	{"POST", "/weeks/{week}/issue", coordinators},
 	{"POST", "/jobs/{id}/stop", coordinators},
 
-	{"GET", "/api/v1/telescopes", all},
+	{"GET", "/api/v1/telescopes", people},
+	{"GET", "/api/v1/telescopes/{code}", all},
 	{"GET", "/api/v1/telescopes/{code}/now", all},
 	{"GET", "/api/v1/telescopes/{code}/scans", all},
 	{"GET", "/api/v1/telescopes/{code}/run-sheets/{night}", all},
 	{"GET", "/api/v1/scans/{id}", all},
 	{"POST", "/api/v1/scans/{id}/outcome", reporters},
+	{"GET", "/api/v1/sources", people},
+	{"GET", "/api/v1/sources/{name}", people},
+	{"GET", "/api/v1/weeks/{week}", people},
 	{"GET", "/api/v1/weeks/{week}/plans", people},
 	{"POST", "/api/v1/weeks/{week}/plan", coordinators},
 	{"GET", "/api/v1/jobs/{id}", people},
@@ -87,55 +95,50 @@ func rolesOf(method, pattern string) []auth.Role {
 }
 
 // authorise finds out who asks and lets the request through if the table says
-// so. It stands before the router has chosen a route, and asks it which one
-// that would be: a path that is no route goes on to its 404.
-func (s *Server) authorise(mux *chi.Mux) func(http.Handler) http.Handler {
-	return func(next http.Handler) http.Handler {
-		return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
-			method := r.Method
-			if method == http.MethodHead {
-				method = http.MethodGet
-			}
-			pattern := mux.Find(chi.NewRouteContext(), method, r.URL.Path)
-			line(r).pattern = pattern
-			if pattern == "" {
-				next.ServeHTTP(w, r)
+// so. It stands between the router and the handlers, so that what it looks up
+// is the very route that was chosen. A key reaches what is its own telescope's
+// alone.
+func (s *Server) authorise(next http.Handler) http.Handler {
+	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
+		pattern := chi.RouteContext(r.Context()).RoutePattern()
+		if slices.Contains(openPatterns, pattern) { // no look-up for what needs nobody's name
+			next.ServeHTTP(w, r)
+			return
+		}
+		id, err := s.auth.Identify(r)
+		if err != nil {
+			s.answerError(w, r, err)
+			return
+		}
+		logline.From(r.Context()).SetActor(id.Actor())
+		if err := mayCall(id, rolesOf(r.Method, pattern), chi.URLParam(r, "code")); err != nil {
+			if id.Role == auth.RoleNone && wantsPage(r) && (r.Method == http.MethodGet || r.Method == http.MethodHead) {
+				http.Redirect(w, r, "/sign-in?next="+url.QueryEscape(r.URL.RequestURI()), http.StatusSeeOther)
 				return
 			}
-			roles := rolesOf(method, pattern)
-			id, err := auth.Identity{}, error(nil)
-			if !slices.Contains(openPatterns, pattern) { // no look-up for what needs nobody's name
-				id, err = s.auth.Identify(r)
-			}
-			switch {
-			case err != nil:
-				s.answerError(w, r, err)
-				return
-			case len(roles) == 0:
-				s.answerError(w, r, scheduler.Errorf(scheduler.ErrForbidden, "nobody may call this"))
-				return
-			case !slices.Contains(roles, id.Role) && id.Role == auth.RoleNone:
-				s.signInFirst(w, r)
-				return
-			case !slices.Contains(roles, id.Role):
-				s.answerError(w, r, scheduler.Errorf(scheduler.ErrForbidden, "a %s may not do this", id.Role))
-				return
-			}
-			line(r).actor = id.Actor()
-			next.ServeHTTP(w, r.WithContext(auth.With(r.Context(), id)))
-		})
-	}
+			s.answerError(w, r, err)
+			return
+		}
+		next.ServeHTTP(w, r.WithContext(auth.With(r.Context(), id)))
+	})
 }
 
-// openPatterns are routes that never look at who asks.
-var openPatterns = []string{"/livez", "/readyz", "/static/*"}
-
-// signInFirst sends a browser to the sign-in page and tells a script that a
-// key is wanted.
-func (s *Server) signInFirst(w http.ResponseWriter, r *http.Request) {
-	if wantsPage(r) && r.Method == http.MethodGet {
-		http.Redirect(w, r, "/sign-in?next="+urlQuery(r.URL.RequestURI()), http.StatusSeeOther)
-		return
+// mayCall refuses somebody whose role is not among those that may, and a key
+// whose telescope is another than the one in the path.
+func mayCall(id auth.Identity, roles []auth.Role, telescope string) error {
+	switch {
+	case len(roles) == 0:
+		return scheduler.Errorf(scheduler.ErrForbidden, "nobody may call this")
+	case slices.Contains(roles, id.Role) && (telescope == "" || id.MaySee(telescope)):
+		return nil
+	case slices.Contains(roles, id.Role):
+		return scheduler.Errorf(scheduler.ErrForbidden, "this key is for telescope %s", strings.Join(id.Telescopes, ", "))
+	case id.Role == auth.RoleNone:
+		return scheduler.Errorf(scheduler.ErrUnauthenticated, "sign in, or send a key as: Authorization: Bearer KEY")
 	}
-	s.answerError(w, r, scheduler.Errorf(scheduler.ErrUnauthenticated, "sign in, or send a key as: Authorization: Bearer KEY"))
+	return scheduler.Errorf(scheduler.ErrForbidden, "this is not for a %s", id.Role)
 }
+
+// openPatterns are routes that never look at who asks. The table lets anybody
+// call them; they answer even with a wrong key and while the database is away.
+var openPatterns = []string{"/livez", "/readyz", "/static/*", "/api/v1/openapi.json", "/api/v1/openapi.yaml", "/api/v1/problems"}

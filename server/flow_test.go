@@ -57,10 +57,9 @@ func TestWeekFromPlanToOutcome(t *testing.T) {
 		t.Fatalf("issue: %s %s", res.Status, b)
 	}
 
-	var scans []apiScan
 	script := w.as(auth.RoleKey)
 	tel := w.telescopes()[0]
-	script.get("/api/v1/telescopes/"+tel+"/scans?from="+url.QueryEscape(monday.Format(time.RFC3339))+"&to="+url.QueryEscape(monday.AddDate(0, 0, 7).Format(time.RFC3339)), &scans)
+	scans := allOf[apiScan](script, "/api/v1/telescopes/"+tel+"/scans?limit=7&from="+url.QueryEscape(monday.Format(time.RFC3339))+"&to="+url.QueryEscape(monday.AddDate(0, 0, 7).Format(time.RFC3339)))
 	x := firstThatMeetsACadence(t, scans)
 
 	// At its start the script asks what to do, twice: the second time nothing

@@ -52,6 +52,7 @@ type world struct {
 	clock *clock
 	logs  *syncBuffer
 	ref   store.CampaignRef
+	api   *contract
 }
 
 // syncBuffer is a buffer that several goroutines may write to.
@@ -103,6 +104,7 @@ func newWorld(t testing.TB) *world {
 		}
 	})
 	w.srv = New(Deps{Store: w.store, Planner: queue, Log: log, Clock: w.clock.now, Version: "test"})
+	w.api = newContract(t, w.srv)
 	w.http = httptest.NewServer(w.srv.Handler())
 	t.Cleanup(w.http.Close)
 	return w
@@ -136,7 +138,11 @@ func (w *world) as(role auth.Role) *client {
 		name := string(role) + " " + time.Duration(len(w.logs.String())).String()
 		p, err := w.store.PersonByName(ctx, name)
 		if err != nil {
-			if p, err = w.store.AddPerson(ctx, name, string(role), nil, "", "test"); err != nil {
+			var named []string
+			if role == auth.RoleObserver {
+				named = w.telescopes()[:1]
+			}
+			if p, err = w.store.AddPerson(ctx, name, string(role), named, "", "test"); err != nil {
 				w.t.Fatal(err)
 			}
 		}
@@ -204,7 +210,29 @@ func (c *client) do(method, path string, body any, header ...string) (*http.Resp
 	if err != nil {
 		c.w.t.Fatal(err)
 	}
+	c.w.api.check(c.w.t, req, res, b)
 	return res, b
+}
+
+// allOf fetches a whole list, page by page.
+func allOf[T any](c *client, path string) []T {
+	c.w.t.Helper()
+	var all []T
+	cursor := ""
+	for range 200 {
+		var page struct {
+			Items []T
+			Next  string
+		}
+		c.get(path+cursor, &page)
+		all = append(all, page.Items...)
+		if page.Next == "" {
+			return all
+		}
+		cursor = "&cursor=" + url.QueryEscape(page.Next)
+	}
+	c.w.t.Fatalf("%s has no end", path)
+	return nil
 }
 
 // get fetches JSON into v and wants status 200.

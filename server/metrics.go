@@ -2,6 +2,7 @@ package server
 
 import (
 	"net/http"
+	"net/http/pprof"
 	"strconv"
 	"time"
 
@@ -13,7 +14,8 @@ import (
 )
 
 // Metrics counts what the service does, for Prometheus. Labels are route
-// patterns, never paths.
+// patterns, never paths, and known methods: strangers must not be able to make
+// new ones.
 type Metrics struct {
 	registry *prometheus.Registry
 	requests *prometheus.HistogramVec
@@ -29,21 +31,40 @@ func NewMetrics(s *store.Store) *Metrics {
 	gauge := func(name, help string, f func() float64) prometheus.Collector {
 		return prometheus.NewGaugeFunc(prometheus.GaugeOpts{Name: name, Help: help}, f)
 	}
+	counter := func(name, help string, f func() float64) prometheus.Collector {
+		return prometheus.NewCounterFunc(prometheus.CounterOpts{Name: name, Help: help}, f)
+	}
 	m.registry.MustRegister(m.requests, collectors.NewGoCollector(), collectors.NewProcessCollector(collectors.ProcessCollectorOpts{}),
 		gauge("cadencewright_db_connections", "Connections to the database.", func() float64 { return float64(s.Stat().TotalConns()) }),
 		gauge("cadencewright_db_connections_busy", "Connections in use.", func() float64 { return float64(s.Stat().AcquiredConns()) }),
-		gauge("cadencewright_db_wait_seconds_total", "Time spent waiting for a connection.", func() float64 { return s.Stat().EmptyAcquireWaitTime().Seconds() }))
+		gauge("cadencewright_db_connections_max", "Connections at most.", func() float64 { return float64(s.Stat().MaxConns()) }),
+		counter("cadencewright_db_wait_seconds_total", "Time spent waiting for a connection.", func() float64 { return s.Stat().EmptyAcquireWaitTime().Seconds() }))
 	return m
 }
+
+// methods that have a label of their own.
+var methods = map[string]bool{http.MethodGet: true, http.MethodHead: true, http.MethodPost: true, http.MethodPut: true, http.MethodPatch: true,
+	http.MethodDelete: true, http.MethodOptions: true}
 
 func (m *Metrics) request(method, route string, status int, took time.Duration) {
 	if route == "" {
 		route = "none"
 	}
+	if !methods[method] {
+		method = "other"
+	}
 	m.requests.WithLabelValues(method, route, strconv.Itoa(status)).Observe(took.Seconds())
 }
 
-// Handler serves the metrics.
+// Handler serves the metrics at /metrics and profiles of the running program
+// at /debug/pprof/. It is for operators alone: serve it where nobody else
+// reaches.
 func (m *Metrics) Handler() http.Handler {
-	return promhttp.HandlerFor(m.registry, promhttp.HandlerOpts{})
+	mux := http.NewServeMux()
+	mux.Handle("GET /metrics", promhttp.HandlerFor(m.registry, promhttp.HandlerOpts{}))
+	mux.HandleFunc("GET /debug/pprof/", pprof.Index)
+	mux.HandleFunc("GET /debug/pprof/profile", pprof.Profile)
+	mux.HandleFunc("GET /debug/pprof/trace", pprof.Trace)
+	mux.HandleFunc("GET /debug/pprof/symbol", pprof.Symbol)
+	return mux
 }

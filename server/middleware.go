@@ -7,31 +7,15 @@ import (
 	"fmt"
 	"log/slog"
 	"net/http"
-	"net/url"
 	"runtime/debug"
 	"strings"
 	"time"
 
-	"cadencewright/server/api"
-	"cadencewright/server/httperr"
+	"github.com/go-chi/chi/v5"
+
+	"cadencewright/scheduler"
+	"cadencewright/server/logline"
 )
-
-// logLine is the one line that a request leaves in the log, filled in as the
-// request goes.
-type logLine struct {
-	id, pattern, actor string
-	err                error
-}
-
-type lineKey struct{}
-
-// line is the request's log line.
-func line(r *http.Request) *logLine {
-	if l, ok := r.Context().Value(lineKey{}).(*logLine); ok {
-		return l
-	}
-	return &logLine{}
-}
 
 // recorder notes the status and size of an answer.
 type recorder struct {
@@ -41,7 +25,7 @@ type recorder struct {
 }
 
 func (w *recorder) WriteHeader(status int) {
-	if w.status == 0 {
+	if w.status == 0 && status >= 200 { // a 1xx is not the answer yet
 		w.status = status
 	}
 	w.ResponseWriter.WriteHeader(status)
@@ -64,45 +48,50 @@ func (w *recorder) Unwrap() http.ResponseWriter { return w.ResponseWriter }
 func (s *Server) logged(next http.Handler) http.Handler {
 	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
 		start := time.Now()
-		l := &logLine{id: requestID()}
+		l := &logline.Line{ID: requestID()}
 		rec := &recorder{ResponseWriter: w}
-		rec.Header().Set("X-Request-Id", l.id)
-		r = r.WithContext(context.WithValue(r.Context(), lineKey{}, l))
+		rec.Header().Set("X-Request-Id", l.ID)
+		r = r.WithContext(logline.With(r.Context(), l))
 		defer func() {
-			if p := recover(); p != nil {
-				if p == http.ErrAbortHandler {
-					panic(p)
-				}
-				l.err = fmt.Errorf("panic: %v\n%s", p, debug.Stack())
+			p := recover()
+			if p != nil && p != http.ErrAbortHandler {
+				err := fmt.Errorf("panic: %v\n%s", p, debug.Stack())
+				l.Fail(err)
 				if rec.status == 0 {
-					s.answerError(rec, r, l.err)
+					s.answerError(rec, r, err)
+				} else { // half an answer is out: the client must not take it for a whole one
+					p = http.ErrAbortHandler
 				}
 			}
 			s.writeLine(r, rec, l, time.Since(start))
+			if p == http.ErrAbortHandler {
+				panic(p)
+			}
 		}()
 		next.ServeHTTP(rec, r)
 	})
 }
 
-func (s *Server) writeLine(r *http.Request, rec *recorder, l *logLine, took time.Duration) {
+func (s *Server) writeLine(r *http.Request, rec *recorder, l *logline.Line, took time.Duration) {
+	pattern, status := chi.RouteContext(r.Context()).RoutePattern(), rec.status
+	switch {
+	case r.Context().Err() == context.Canceled && (status == 0 || status >= 500):
+		status = 499 // nobody waited for the answer
+	case status == 0:
+		status = http.StatusOK // a handler that writes nothing
+	}
 	level := slog.LevelInfo
 	switch {
-	case rec.status >= 500:
+	case status >= 500:
 		level = slog.LevelError
-	case l.pattern == "/livez" || l.pattern == "/readyz" || l.pattern == "/static/*":
+	case pattern == "/livez" || pattern == "/readyz" || pattern == "/static/*":
 		level = slog.LevelDebug
 	}
-	attrs := []slog.Attr{slog.String("method", r.Method), slog.String("route", l.pattern), slog.Int("status", rec.status),
-		slog.Int64("bytes", rec.bytes), slog.Duration("took", took.Round(10*time.Microsecond)), slog.String("id", l.id)}
-	if l.actor != "" {
-		attrs = append(attrs, slog.String("actor", l.actor))
-	}
-	if l.err != nil {
-		attrs = append(attrs, slog.Any("error", l.err))
-	}
+	attrs := append([]slog.Attr{slog.String("method", r.Method), slog.String("route", pattern), slog.Int("status", status),
+		slog.Int64("bytes", rec.bytes), slog.Duration("took", took.Round(10*time.Microsecond))}, l.Attrs()...)
 	s.log.LogAttrs(r.Context(), level, "request", attrs...)
 	if s.metrics != nil {
-		s.metrics.request(r.Method, l.pattern, rec.status, took)
+		s.metrics.request(r.Method, pattern, status, took)
 	}
 }
 
@@ -112,53 +101,64 @@ func requestID() string {
 	return hex.EncodeToString(b[:])
 }
 
-// secured sets what every answer says to a browser about safety. Scripts,
-// styles and pictures come from here and nowhere else, and never from within a
-// page.
+// policy is what a browser may load and do: scripts, styles and pictures come
+// from here and nowhere else, and never from within a page.
+const policy = "default-src 'self'; base-uri 'none'; form-action 'self'; frame-ancestors 'none'; object-src 'none'"
+
+// secured sets what every answer says to a browser about safety.
 func secured(next http.Handler) http.Handler {
-	const policy = "default-src 'self'; base-uri 'none'; form-action 'self'; frame-ancestors 'none'; object-src 'none'"
 	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
 		h := w.Header()
 		h.Set("Content-Security-Policy", policy)
 		h.Set("X-Content-Type-Options", "nosniff")
 		h.Set("Referrer-Policy", "same-origin")
 		h.Set("Cross-Origin-Opener-Policy", "same-origin")
+		h.Set("Cross-Origin-Resource-Policy", "same-origin")
 		h.Set("Vary", "Cookie, Authorization, Accept-Encoding")
 		next.ServeHTTP(w, r)
 	})
 }
 
-// maxBody bounds what a request may send.
-const maxBody = 2 << 20
+const (
+	// maxBody bounds what a request may send, in bytes.
+	maxBody = 2 << 20
+	// workTimeout bounds how long a request may be worked on.
+	workTimeout = 25 * time.Second
+)
 
 // bounded limits the size of what is sent and the time that an answer may take.
 func bounded(next http.Handler) http.Handler {
 	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
 		r.Body = http.MaxBytesReader(w, r.Body, maxBody)
-		ctx, cancel := context.WithTimeout(r.Context(), 25*time.Second)
+		ctx, cancel := context.WithTimeout(r.Context(), workTimeout)
 		defer cancel()
 		next.ServeHTTP(w, r.WithContext(ctx))
 	})
 }
 
-// wantsPage tells a browser from a script.
-func wantsPage(r *http.Request) bool {
-	return !strings.HasPrefix(r.URL.Path, api.Prefix) && !strings.HasSuffix(r.URL.Path, ".csv") &&
-		r.Header.Get("Authorization") == "" && strings.Contains(r.Header.Get("Accept"), "text/html")
-}
-
-// answerError answers with a page or a problem document, and keeps what only
-// the log may know.
-func (s *Server) answerError(w http.ResponseWriter, r *http.Request, err error) {
-	line(r).err = err
-	if wantsPage(r) && s.pages != nil {
-		p := httperr.Of(err)
-		p.Instance = w.Header().Get("X-Request-Id")
-		httperr.Headers(w.Header(), p.Status)
-		s.pages.Error(w, r, p)
-		return
+// sameOrigin refuses changes that another site's page asks for. Behind a proxy
+// the address that people use may be another than the one a request names.
+func (s *Server) sameOrigin() func(http.Handler) http.Handler {
+	guard := http.NewCrossOriginProtection()
+	if s.origin != "" {
+		if err := guard.AddTrustedOrigin(s.origin); err != nil {
+			s.log.Warn("the base URL is no origin", "base_url", s.origin, "error", err)
+		}
 	}
-	httperr.Write(w, r, err)
+	guard.SetDenyHandler(s.answer(func(http.ResponseWriter, *http.Request) error {
+		return scheduler.Errorf(scheduler.ErrForbidden, "this change was asked for by a page of another site")
+	}))
+	return guard.Handler
 }
 
-func urlQuery(s string) string { return url.QueryEscape(s) }
+// plainPath has the router read a path with its escapes undone, so that a name
+// is the same however a client escaped it. Only an escaped slash stays: it is
+// part of a name, not of the route.
+func plainPath(next http.Handler) http.Handler {
+	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
+		if !strings.Contains(strings.ToLower(r.URL.RawPath), "%2f") {
+			r.URL.RawPath = ""
+		}
+		next.ServeHTTP(w, r)
+	})
+}

@@ -1,6 +1,7 @@
 package server
 
 import (
+	"cmp"
 	"fmt"
 	"net/http"
 	"slices"
@@ -24,9 +25,6 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 	}
 	seen := 0
 	err := chi.Walk(w.srv.routes, func(method, pattern string, _ http.Handler, _ ...func(http.Handler) http.Handler) error {
-		if pattern == "/static/*" && method != "GET" {
-			return nil // the file handler answers them with 405 itself
-		}
 		allowed := rolesOf(method, pattern)
 		if len(allowed) == 0 {
 			t.Errorf("%s %s stands in no row of the access table", method, pattern)
@@ -38,7 +36,7 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 			if method == "POST" && (pattern == "/sign-out" || strings.HasPrefix(pattern, "/sign-in")) {
 				continue // they change who asks
 			}
-			path := strings.NewReplacer("{code}", "NONE", "{week}", "2027-W04", "{night}", "2027-01-18", "{id}", "999999", "{name}", "nobody", "{token}", "x", "*", "none").Replace(pattern)
+			path := strings.NewReplacer("{code}", w.telescopes()[0], "{week}", "2027-W04", "{night}", "2027-01-18", "{id}", "999999", "{name}", "nobody", "{token}", "x", "*", "none").Replace(pattern)
 			res, body := clients[r].do(method, path, nil)
 			refused := res.StatusCode == 401 || res.StatusCode == 403 || res.StatusCode == 303 && strings.HasPrefix(res.Header.Get("Location"), "/sign-in?")
 			may := slices.Contains(allowed, r)
@@ -49,7 +47,7 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 				t.Errorf("%s as %q: %s %s", line, r, res.Status, body)
 			}
 			if may {
-				line += " " + string(r)
+				line += " " + string(cmp.Or(r, "nobody"))
 			}
 		}
 		t.Log(line)
@@ -62,7 +60,7 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 		t.Errorf("only %d routes were walked", seen)
 	}
 	for _, a := range access {
-		if pattern := w.srv.routes.Find(chi.NewRouteContext(), a.method, strings.NewReplacer("{", "x", "}", "x", "*", "x").Replace(a.pattern)); pattern == "" {
+		if pattern := w.srv.routes.Find(chi.NewRouteContext(), a.method, strings.NewReplacer("{", "x", "}", "x", "*", "x").Replace(a.pattern)); pattern != a.pattern {
 			t.Errorf("the access table names %s %s, which is no route", a.method, a.pattern)
 		}
 	}
@@ -76,8 +74,7 @@ func TestKeyReportsForItsOwnTelescopeOnly(t *testing.T) {
 	if res, b := ada.do("POST", "/api/v1/plans/"+itoa(plan)+"/issue", nil, "If-Match", `"1"`); res.StatusCode != 200 {
 		t.Fatalf("issue: %s %s", res.Status, b)
 	}
-	var scans []apiScan
-	ada.get("/api/v1/plans/"+itoa(plan)+"/scans", &scans)
+	scans := allOf[apiScan](ada, "/api/v1/plans/"+itoa(plan)+"/scans?limit=200")
 	key := w.as(auth.RoleKey)
 	own := w.telescopes()[0]
 	for _, x := range scans {

@@ -1,5 +1,6 @@
-// Package server is the HTTP service: the route table, the order of what
-// stands before every handler, and starting and stopping.
+// Package server is the HTTP service: the route table and the order of what
+// stands before every handler (routes.go), who may call what (access.go), and
+// starting and stopping.
 package server
 
 import (
@@ -9,11 +10,10 @@ import (
 	"log/slog"
 	"net"
 	"net/http"
+	"syscall"
 	"time"
 
-	"github.com/danielgtaylor/huma/v2"
 	"github.com/go-chi/chi/v5"
-	"github.com/go-chi/chi/v5/middleware"
 
 	"cadencewright/scheduler"
 	"cadencewright/server/api"
@@ -21,7 +21,6 @@ import (
 	"cadencewright/server/pages"
 	"cadencewright/server/planning"
 	"cadencewright/server/store"
-	"cadencewright/web/static"
 )
 
 // Planner hands planning jobs to the queue.
@@ -34,8 +33,9 @@ type Deps struct {
 	Store   *store.Store
 	Planner Planner
 	Log     *slog.Logger
-	Clock   func() time.Time
-	Secure  bool // people come over https
+	Clock   func() time.Time // nil: the system's
+	Secure  bool             // cookies over https only
+	BaseURL string           // as people reach the service, where a proxy stands before it; may be empty
 	Version string
 	Metrics *Metrics // nil: none
 }
@@ -47,9 +47,10 @@ type Server struct {
 	pages   *pages.Pages
 	log     *slog.Logger
 	metrics *Metrics
+	origin  string // trusted besides the one that a request was sent to; may be empty
 	handler http.Handler
 	routes  chi.Routes
-	api     huma.API
+	api     *api.API
 }
 
 // New builds the service.
@@ -57,123 +58,87 @@ func New(d Deps) *Server {
 	if d.Clock == nil {
 		d.Clock = time.Now
 	}
-	s := &Server{store: d.Store, log: d.Log, metrics: d.Metrics, auth: auth.New(d.Store, d.Secure)}
+	s := &Server{store: d.Store, log: d.Log, metrics: d.Metrics, origin: d.BaseURL, auth: auth.New(d.Store, d.Secure)}
 	sheets := planning.Sheets{Store: d.Store}
 	s.pages = pages.New(d.Store, d.Planner, sheets, s.auth, d.Clock)
 	mux := chi.NewMux()
-	// The order matters: what stands first sees the request first and the
-	// answer last.
-	mux.Use(
-		s.logged,
-		secured,
-		bounded,
-		middleware.Compress(5, "text/html", "text/css", "text/csv", "application/json", "application/problem+json", "image/svg+xml"),
-		s.sameOrigin(),
-		s.authorise(mux),
-	)
-	s.routeTable(mux)
-	s.api = api.Register(mux, d.Store, d.Planner, sheets, d.Clock, d.Version)
+	s.before(mux)
+	mux.Group(func(r chi.Router) {
+		r.Use(s.authorise)
+		s.routeTable(r)
+		s.api = api.Register(r, d.Store, d.Planner, sheets, d.Clock, d.Version)
+	})
+	mux.NotFound(s.answer(nothingHere))
+	mux.MethodNotAllowed(s.answer(notPossible))
 	s.handler, s.routes = mux, mux
 	return s
-}
-
-// routeTable is every route but those of the API. Who may call them stands in
-// the access table.
-func (s *Server) routeTable(mux *chi.Mux) {
-	page := func(f func(http.ResponseWriter, *http.Request) error) http.HandlerFunc {
-		return func(w http.ResponseWriter, r *http.Request) {
-			if err := f(w, r); err != nil {
-				s.answerError(w, r, err)
-			}
-		}
-	}
-	p := s.pages
-	mux.Get("/livez", func(w http.ResponseWriter, _ *http.Request) { fmt.Fprintln(w, "ok") })
-	mux.Get("/readyz", page(s.ready))
-	mux.Handle("/static/*", static.Handler())
-
-	mux.Get("/sign-in", page(p.SignIn))
-	mux.Post("/sign-in", page(p.DoSignIn))
-	mux.Get("/sign-in/{token}", page(p.Link))
-	mux.Post("/sign-in/{token}", page(p.DoLink))
-	mux.Post("/sign-out", page(p.SignOut))
-	mux.Get("/help", page(p.Help))
-
-	mux.Get("/", page(p.Home))
-	mux.Get("/weeks/{week}", page(p.Week))
-	mux.Get("/weeks/{week}/job", page(p.Job))
-	mux.Get("/weeks/{week}/scans/{id}", page(p.Scan))
-	mux.Post("/weeks/{week}/plan", page(p.Plan))
-	mux.Post("/weeks/{week}/issue", page(p.Issue))
-	mux.Post("/jobs/{id}/stop", page(p.Stop))
-	mux.Get("/sources", page(p.Sources))
-	mux.Get("/sources/{name}", page(p.Source))
-	mux.Get("/telescopes", page(p.Telescopes))
-	mux.Get("/telescopes/{code}", page(p.Telescope))
-	mux.Get("/telescopes/{code}/nights/{night}", page(p.RunSheet))
-	mux.Get("/telescopes/{code}/nights/{night}.csv", page(p.RunSheetCSV))
-
-	mux.NotFound(page(func(_ http.ResponseWriter, r *http.Request) error {
-		return scheduler.Errorf(scheduler.ErrNotFound, "there is nothing at %s", r.URL.Path)
-	}))
-	mux.MethodNotAllowed(func(w http.ResponseWriter, r *http.Request) {
-		w.Header().Set("Content-Type", "application/problem+json")
-		w.WriteHeader(http.StatusMethodNotAllowed)
-		fmt.Fprintf(w, `{"type":"about:blank","title":"Method not allowed","status":405,"detail":"%s is not possible here"}`+"\n", r.Method)
-	})
-}
-
-// sameOrigin refuses changes that another site's page asks for.
-func (s *Server) sameOrigin() func(http.Handler) http.Handler {
-	guard := http.NewCrossOriginProtection()
-	guard.SetDenyHandler(http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
-		s.answerError(w, r, scheduler.Errorf(scheduler.ErrForbidden, "this change was asked for by a page of another site"))
-	}))
-	return guard.Handler
-}
-
-// ready tells whether requests can be served: the database answers.
-func (s *Server) ready(w http.ResponseWriter, r *http.Request) error {
-	ctx, cancel := context.WithTimeout(r.Context(), 2*time.Second)
-	defer cancel()
-	if err := s.store.Ping(ctx); err != nil {
-		return err
-	}
-	fmt.Fprintln(w, "ready")
-	return nil
 }
 
 // Handler is the whole service.
 func (s *Server) Handler() http.Handler { return s.handler }
 
-// API is the description of the REST API.
-func (s *Server) API() huma.API { return s.api }
+// API is the REST API with its description.
+func (s *Server) API() *api.API { return s.api }
 
 // Listen opens the address to serve on; an error says what to do.
-func Listen(addr string) (net.Listener, error) {
-	l, err := net.Listen("tcp", addr)
-	if err != nil {
-		return nil, fmt.Errorf("cannot listen on %s: %w; choose another address with CADENCEWRIGHT_ADDR", addr, err)
-	}
-	return l, nil
+func Listen(addr string) (net.Listener, error) { return listen(addr, "CADENCEWRIGHT_ADDR") }
+
+// ListenMetrics opens the address to serve metrics on.
+func ListenMetrics(addr string) (net.Listener, error) {
+	return listen(addr, "CADENCEWRIGHT_METRICS_ADDR")
 }
 
-// Serve answers on the listener until ctx ends, then lets answers under way
-// finish, up to the given time.
+func listen(addr, setting string) (net.Listener, error) {
+	l, err := net.Listen("tcp", addr)
+	switch {
+	case err == nil:
+		return l, nil
+	case errors.Is(err, syscall.EADDRINUSE):
+		return nil, fmt.Errorf("%s is in use by another program; stop that one, or choose another address with %s", addr, setting)
+	case errors.Is(err, syscall.EACCES):
+		return nil, fmt.Errorf("listening on %s is not allowed to this user; choose a port above 1023 with %s", addr, setting)
+	}
+	return nil, fmt.Errorf("cannot listen on %s: %w; choose another address with %s", addr, err, setting)
+}
+
+// The limits of one connection: a client that sends or takes its time is let
+// go. An answer may take as long as a request may be worked on, and then some
+// for a poor line.
+const (
+	headerTimeout = 5 * time.Second
+	readTimeout   = 30 * time.Second
+	writeTimeout  = workTimeout + 60*time.Second
+	idleTimeout   = 2 * time.Minute
+	maxHeader     = 64 << 10
+)
+
+// Serve answers on the listener until ctx ends, then takes no more requests,
+// lets answers under way finish, up to the given time, and breaks off what is
+// left.
 func (s *Server) Serve(ctx context.Context, l net.Listener, stopAfter time.Duration) error {
-	srv := &http.Server{Handler: s.handler, ReadHeaderTimeout: 5 * time.Second, ReadTimeout: 30 * time.Second, WriteTimeout: 60 * time.Second,
-		IdleTimeout: 2 * time.Minute, MaxHeaderBytes: 64 << 10, ErrorLog: slog.NewLogLogger(s.log.Handler(), slog.LevelWarn)}
+	return serve(ctx, l, s.handler, s.log, stopAfter)
+}
+
+// ServeMetrics serves metrics and profiles until ctx ends.
+func (s *Server) ServeMetrics(ctx context.Context, l net.Listener) error {
+	return serve(ctx, l, s.metrics.Handler(), s.log, time.Second)
+}
+
+func serve(ctx context.Context, l net.Listener, h http.Handler, log *slog.Logger, stopAfter time.Duration) error {
+	srv := &http.Server{Handler: h, ReadHeaderTimeout: headerTimeout, ReadTimeout: readTimeout, WriteTimeout: writeTimeout,
+		IdleTimeout: idleTimeout, MaxHeaderBytes: maxHeader, ErrorLog: slog.NewLogLogger(log.Handler(), slog.LevelWarn)}
 	failed := make(chan error, 1)
 	go func() { failed <- srv.Serve(l) }()
 	select {
 	case err := <-failed:
-		return err
+		return fmt.Errorf("serving on %s: %w", l.Addr(), err)
 	case <-ctx.Done():
 	}
 	stop, cancel := context.WithTimeout(context.WithoutCancel(ctx), stopAfter)
 	defer cancel()
 	if err := srv.Shutdown(stop); err != nil {
-		return errors.Join(err, srv.Close())
+		log.Warn("answers under way were broken off", "after", stopAfter, "error", err)
+		return srv.Close()
 	}
 	return nil
 }

@@ -6,9 +6,7 @@ import (
 	"fmt"
 	"log/slog"
 	"net"
-	"net/http"
 	"os"
-	"time"
 
 	"cadencewright/server"
 	"cadencewright/server/config"
@@ -66,7 +64,7 @@ func (db *database) close() error {
 
 // readConfig reads the environment.
 func readConfig() (config.Config, error) {
-	cfg, err := config.FromEnv(os.Getenv)
+	cfg, err := config.FromEnviron(os.Environ())
 	if err != nil {
 		return cfg, inputError{err}
 	}
@@ -94,28 +92,24 @@ func newService(std stdio, cfg config.Config, db *database) (*service, error) {
 	if cfg.MetricsAddr != "" {
 		metrics = server.NewMetrics(db.store)
 	}
-	secure := len(cfg.BaseURL) >= 8 && cfg.BaseURL[:8] == "https://"
-	h := server.New(server.Deps{Store: db.store, Planner: queue, Log: log, Secure: secure, Version: versionLine(), Metrics: metrics})
-	s := &service{cfg: cfg, db: db, queue: queue, http: h, log: log}
-	if metrics != nil {
-		if err := serveMetrics(cfg.MetricsAddr, metrics); err != nil {
-			return nil, err
-		}
-	}
-	return s, nil
+	h := server.New(server.Deps{Store: db.store, Planner: queue, Log: log, Secure: cfg.Secure(), BaseURL: cfg.BaseURL, Version: versionLine(), Metrics: metrics})
+	return &service{cfg: cfg, db: db, queue: queue, http: h, log: log}, nil
 }
 
-// serveMetrics serves the metrics on an address of their own, for as long as
-// the program runs.
-func serveMetrics(addr string, m *server.Metrics) error {
-	l, err := net.Listen("tcp", addr)
-	if err != nil {
-		return fmt.Errorf("cannot listen on %s: %w; choose another address with CADENCEWRIGHT_METRICS_ADDR", addr, err)
+// serveMetrics serves the metrics on an address of their own, until ctx ends.
+func (s *service) serveMetrics(ctx context.Context) error {
+	if s.cfg.MetricsAddr == "" {
+		return nil
 	}
-	mux := http.NewServeMux()
-	mux.Handle("GET /metrics", m.Handler())
-	srv := &http.Server{Handler: mux, ReadHeaderTimeout: 5 * time.Second, WriteTimeout: 30 * time.Second}
-	go func() { _ = srv.Serve(l) }() // it ends with the program
+	l, err := server.ListenMetrics(s.cfg.MetricsAddr)
+	if err != nil {
+		return err
+	}
+	go func() {
+		if err := s.http.ServeMetrics(ctx, l); err != nil {
+			s.log.Warn("serving metrics", "error", err)
+		}
+	}()
 	return nil
 }
 
@@ -132,6 +126,9 @@ func (s *service) run(ctx context.Context, l net.Listener, before func(context.C
 			case <-ctx.Done():
 			}
 		}()
+	}
+	if err := s.serveMetrics(ctx); err != nil {
+		return err
 	}
 	if err := s.queue.Start(context.WithoutCancel(ctx)); err != nil {
 		return err

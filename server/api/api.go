@@ -1,14 +1,17 @@
 // Package api is the REST API under /api/v1: JSON in and out, described by an
 // OpenAPI document that the program serves itself. It sees neither SQL nor
-// pages. Who may call what is decided before a request gets here.
+// pages. Which role may call what is decided before a request gets here; which
+// telescope a key or an observer may touch where a path does not name it, is
+// decided here.
+//
+// A handler returns what it answers or an error; one adapter (register) turns
+// errors into problem documents and keeps their causes for the log.
 package api
 
 import (
 	"context"
-	"io"
 	"net/http"
-	"reflect"
-	"strings"
+	"strconv"
 	"time"
 
 	"github.com/danielgtaylor/huma/v2"
@@ -16,7 +19,7 @@ import (
 	"github.com/go-chi/chi/v5"
 
 	"cadencewright/scheduler"
-	"cadencewright/server/httperr"
+	"cadencewright/server/auth"
 	"cadencewright/server/runsheet"
 	"cadencewright/server/store"
 )
@@ -33,8 +36,10 @@ type Store interface {
 	ReportOutcome(ctx context.Context, scan int64, r store.Report, actor, onlyTelescope string, idem store.Idempotency) (store.StoredScan, error)
 	PlansOf(ctx context.Context, campaign int64, h scheduler.Horizon, limit int) ([]store.PlanInfo, error)
 	Plan(ctx context.Context, id int64) (store.PlanInfo, *scheduler.Plan, []store.StoredScan, error)
+	PlanFacts(ctx context.Context, id int64) (store.PlanInfo, error)
 	Issue(ctx context.Context, plan, version int64, actor string) (store.PlanInfo, error)
 	Job(ctx context.Context, id int64) (store.PlanJob, error)
+	LastJob(ctx context.Context, campaign int64, h scheduler.Horizon) (*store.PlanJob, error)
 	StopJob(ctx context.Context, id int64, actor string) error
 	Journal(ctx context.Context, campaign, before int64, limit int) ([]store.Entry, error)
 }
@@ -55,143 +60,92 @@ type API struct {
 	planner Planner
 	sheets  Sheets
 	clock   func() time.Time
+	h       huma.API
 }
 
 // Prefix is where the API lives.
 const Prefix = "/api/v1"
 
 // Register puts every operation on the router. version is the program's.
-func Register(r chi.Router, s Store, p Planner, sheets Sheets, clock func() time.Time, version string) huma.API {
+func Register(r chi.Router, s Store, p Planner, sheets Sheets, clock func() time.Time, version string) *API {
 	cfg := huma.DefaultConfig("Cadencewright", version)
-	cfg.Info.Description = "Plans, scans and outcomes of a pulsar timing array. Times are UTC (RFC 3339), angles degrees. " +
-		"Errors are problem documents (RFC 9457). Control scripts send their key as a bearer token; people's browsers their session's cookie."
-	cfg.DocsPath, cfg.SchemasPath = "", ""
-	cfg.OpenAPIPath = Prefix + "/openapi"
+	cfg.Info.Description = about
+	cfg.DocsPath, cfg.SchemasPath, cfg.OpenAPIPath = "", "", "" // the description is served by serveDocument
 	cfg.CreateHooks = nil
 	cfg.Servers = []*huma.Server{{URL: "/", Description: "this service"}}
 	cfg.Components.Schemas = huma.NewMapRegistry("#/components/schemas/", schemaName)
 	cfg.Components.SecuritySchemes = map[string]*huma.SecurityScheme{
 		"key":     {Type: "http", Scheme: "bearer", Description: "a control script's key"},
-		"session": {Type: "apiKey", In: "cookie", Name: "cadencewright_session", Description: "a person's session"},
+		"session": {Type: "apiKey", In: "cookie", Name: auth.CookieName, Description: "a person's session"},
 	}
-	huma.NewError = problem
-	huma.NewErrorWithContext = func(_ huma.Context, status int, msg string, errs ...error) huma.StatusError {
-		return problem(status, msg, errs...)
-	}
-	h := humachi.New(r, cfg)
-	a := &API{s, p, sheets, clock}
-	a.telescopes(h)
-	a.scans(h)
-	a.weeks(h)
-	a.plans(h)
-	a.campaigns(h)
-	return h
+	cfg.Tags = tags
+	a := &API{store: s, planner: p, sheets: sheets, clock: clock, h: humachi.New(r, cfg)}
+	a.telescopes()
+	a.scans()
+	a.sources()
+	a.weeks()
+	a.plans()
+	a.campaigns()
+	a.problems()
+	a.serveDocument(r)
+	return a
 }
 
-// schemaName names the schema of a type: parts of a run sheet have names of
-// their own, since a sheet's scan is not a plan's scan.
-func schemaName(t reflect.Type, hint string) string {
-	name := huma.DefaultSchemaNamer(t, hint)
-	for t.Kind() == reflect.Pointer || t.Kind() == reflect.Slice {
-		t = t.Elem()
-	}
-	if strings.HasSuffix(t.PkgPath(), "/runsheet") && name != "Sheet" {
-		name = "Sheet" + name
-	}
-	return name
+// about stands at the head of the description.
+const about = "Plans, scans and outcomes of a pulsar timing array.\n\n" +
+	"Times are UTC (RFC 3339), angles degrees, TOA uncertainties microseconds. " +
+	"Errors are problem documents (RFC 9457); /api/v1/problems lists their kinds. " +
+	"Lists come in pages: where an answer has `next`, ask again with it as `cursor`. " +
+	"An answer's ETag names what it says: send it in If-None-Match to be told 304 while nothing has changed, " +
+	"and in If-Match with a change, which fails with 412 if somebody else was faster.\n\n" +
+	"Control scripts send their key (`Authorization: Bearer KEY`), which reaches its own telescope alone; browsers send their session's cookie."
+
+// tags group the operations.
+var tags = []*huma.Tag{
+	{Name: "control", Description: "What a telescope's control script needs: what to do now, and reporting what happened."},
+	{Name: "campaign", Description: "Telescopes, sources and what is due."},
+	{Name: "plans", Description: "Weeks, planning jobs, drafts and issued plans."},
+	{Name: "service", Description: "The journal and the kinds of problem."},
 }
 
-// operation is what all operations have in common.
-func operation(method, path, id, summary, description string, errors ...int) huma.Operation {
-	return huma.Operation{Method: method, Path: Prefix + path, OperationID: id, Summary: summary, Description: description,
+// operation is what all operations have in common. errors are the statuses,
+// beyond those that every operation may answer, that clients should expect.
+func operation(tag, method, path, id, summary, description string, errors ...int) huma.Operation {
+	return huma.Operation{Method: method, Path: Prefix + path, OperationID: id, Summary: summary, Description: description, Tags: []string{tag},
 		Security: []map[string][]string{{"key": {}}, {"session": {}}}, Errors: append([]int{401, 403, 503}, errors...), MaxBodyBytes: 1 << 20}
 }
 
-// statusProblem is a problem document as the API library wants it.
-type statusProblem struct {
-	httperr.Problem
-}
-
-// Error is the detail.
-func (p *statusProblem) Error() string { return p.Detail }
-
-// GetStatus is the HTTP status.
-func (p *statusProblem) GetStatus() int { return p.Status }
-
-// ContentType is that of problem documents.
-func (p *statusProblem) ContentType(string) string { return "application/problem+json" }
-
-// problem makes the library's own errors (a body that does not fit its schema)
-// into our documents, with a pointer to each bad field.
-func problem(status int, msg string, errs ...error) huma.StatusError {
-	p := &statusProblem{httperr.Problem{Type: "about:blank", Title: http.StatusText(status), Status: status, Detail: msg}}
-	for _, err := range errs {
-		if d, ok := err.(huma.ErrorDetailer); ok {
-			e := d.ErrorDetail()
-			p.Errors = append(p.Errors, httperr.Field{Pointer: pointer(e.Location), Detail: e.Message})
-		} else if err != nil {
-			p.Errors = append(p.Errors, httperr.Field{Detail: err.Error()})
+// register puts an operation on the router, with an example of its answer and
+// the adapter between its handler and the wire: errors become problem
+// documents, and the log learns their causes.
+func register[I, O any](a *API, op huma.Operation, example any, f func(context.Context, *I) (*O, error)) {
+	if op.DefaultStatus == 0 {
+		op.DefaultStatus = http.StatusOK
+	}
+	if op.Responses == nil {
+		op.Responses = map[string]*huma.Response{}
+	}
+	op.Responses[strconv.Itoa(op.DefaultStatus)] = &huma.Response{
+		Description: op.Summary,
+		Content:     map[string]*huma.MediaType{"application/json": {Example: example}},
+	}
+	huma.Register(a.h, op, func(ctx context.Context, in *I) (*O, error) {
+		out, err := f(ctx, in)
+		if err != nil {
+			return nil, fail(ctx, err)
 		}
-	}
-	return p
+		return out, nil
+	})
 }
 
-// pointer turns the library's place (body.state) into a JSON Pointer (/state).
-func pointer(location string) string {
-	out := []byte{}
-	for i := range len(location) {
-		switch c := location[i]; c {
-		case '.', '[':
-			out = append(out, '/')
-		case ']':
-		default:
-			out = append(out, c)
-		}
-	}
-	s := string(out)
-	for _, prefix := range []string{"body", "path", "query", "header"} {
-		if s == prefix {
-			return ""
-		}
-		if len(s) > len(prefix) && s[:len(prefix)] == prefix && s[len(prefix)] == '/' {
-			return s[len(prefix):]
-		}
-	}
-	return "/" + s
+// withRequest gives an operation an example of what is sent to it.
+func withRequest(op huma.Operation, example any) huma.Operation {
+	op.RequestBody = &huma.RequestBody{Content: map[string]*huma.MediaType{"application/json": {Example: example}}}
+	return op
 }
 
-// fail turns an error of the layers below into a problem document.
-func fail(err error) error {
-	if err == nil {
-		return nil
-	}
-	p := &statusProblem{httperr.Of(err)}
-	if p.Status == http.StatusInternalServerError {
-		return &faultError{p, err}
-	}
-	h := http.Header{}
-	if p.Status == http.StatusServiceUnavailable || p.Status == http.StatusTooManyRequests {
-		h.Set("Retry-After", httperr.RetryAfterS)
-	}
-	return huma.ErrorWithHeaders(p, h)
-}
-
-// faultError is a fault of the program: the document says nothing of it, the
-// log everything.
-type faultError struct {
-	*statusProblem
-	cause error
-}
-
-// Unwrap is the cause, for the log.
-func (e *faultError) Unwrap() error { return e.cause }
-
-// Document writes the OpenAPI document as YAML.
-func Document(h huma.API, w io.Writer) error {
-	b, err := h.OpenAPI().YAML()
-	if err != nil {
-		return err
-	}
-	_, err = w.Write(b)
-	return err
+// notModified adds the answer to a request whose If-None-Match still holds.
+func notModified(op huma.Operation) huma.Operation {
+	op.Responses = map[string]*huma.Response{"304": {Description: "Nothing has changed since the answer whose ETag was sent"}}
+	return op
 }

@@ -4,41 +4,41 @@ import (
 	"context"
 	"encoding/json"
 	"net/http"
+	"strconv"
 	"time"
-
-	"github.com/danielgtaylor/huma/v2"
 
 	"cadencewright/scheduler"
 )
 
-func (a *API) campaigns(h huma.API) {
-	huma.Register(h, operation(http.MethodGet, "/campaigns", "list-campaigns", "The stored campaigns", "The live one first."), a.listCampaigns)
-	huma.Register(h, operation(http.MethodGet, "/campaigns/{id}/file", "get-campaign-file", "A campaign as a file", "The campaign file (campaign/1), in canonical order.", 404), a.campaignFile)
-	huma.Register(h, operation(http.MethodGet, "/journal", "list-journal", "The journal", "Every change: who, when, what; the newest first.", 404, 422), a.journal)
+func (a *API) campaigns() {
+	register(a, operation("campaign", http.MethodGet, "/campaigns", "list-campaigns", "The stored campaigns", "The live one first.", 422), exampleList(exampleCampaign), a.listCampaigns)
+	register(a, operation("campaign", http.MethodGet, "/campaigns/{id}/file", "get-campaign-file", "A campaign as a file",
+		"The campaign file (campaign/1) in canonical order, with its history and what was reported since.", 404), json.RawMessage(`{"format":"campaign/1"}`), a.campaignFile)
+	register(a, operation("service", http.MethodGet, "/journal", "list-journal", "The journal", "Every change: who, when, what; the newest first.", 404, 422),
+		exampleList(exampleEntry), a.journal)
 }
 
 // Campaign is a stored campaign in brief.
 type Campaign struct {
 	ID       int64     `json:"id" example:"1"`
-	Name     string    `json:"name"`
-	Start    time.Time `json:"start"`
-	End      time.Time `json:"end"`
+	Name     string    `json:"name" example:"Example array, spring"`
+	Start    time.Time `json:"start" doc:"inclusive"`
+	End      time.Time `json:"end" doc:"exclusive"`
 	Live     bool      `json:"live" doc:"pages and control scripts serve this one"`
-	Revision int64     `json:"revision" doc:"counts every change to anything of it"`
+	Revision int64     `json:"revision" doc:"counts every change to anything of it" example:"12"`
 }
 
-type campaignsOutput struct{ Body []Campaign }
-
-func (a *API) listCampaigns(ctx context.Context, _ *struct{}) (*campaignsOutput, error) {
-	list, err := a.store.Campaigns(ctx)
+func (a *API) listCampaigns(ctx context.Context, in *PageInput) (*listOutput[Campaign], error) {
+	stored, err := a.store.Campaigns(ctx)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	out := &campaignsOutput{Body: []Campaign{}}
-	for _, c := range list {
-		out.Body = append(out.Body, Campaign(c))
+	all := make([]Campaign, 0, len(stored))
+	for _, c := range stored {
+		all = append(all, Campaign(c))
 	}
-	return out, nil
+	page, err := pageOf(all, *in, func(c *Campaign) string { return strconv.FormatInt(c.ID, 10) }, nil)
+	return &listOutput[Campaign]{page}, err
 }
 
 type campaignInput struct {
@@ -46,47 +46,52 @@ type campaignInput struct {
 }
 
 func (a *API) campaignFile(ctx context.Context, in *campaignInput) (*fileOutput, error) {
-	c, _, err := a.store.LoadCampaign(ctx, in.ID)
+	c, ref, err := a.store.LoadCampaign(ctx, in.ID)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
 	b, err := scheduler.WriteCampaign(c)
-	if err != nil {
-		return nil, fail(err)
-	}
-	return &fileOutput{"application/json", `attachment; filename="campaign.json"`, b}, nil
+	return file("campaign-"+strconv.FormatInt(ref.ID, 10)+".json", b), err
 }
 
 // Entry is a line of the journal.
 type Entry struct {
-	ID      int64           `json:"id"`
+	ID      int64           `json:"id" example:"311"`
 	At      time.Time       `json:"at"`
-	Actor   string          `json:"actor"`
-	Action  string          `json:"action"`
-	Subject string          `json:"subject"`
-	Before  json.RawMessage `json:"before,omitempty"`
-	After   json.RawMessage `json:"after,omitempty"`
+	Actor   string          `json:"actor" doc:"a person's name, or key and the key's name" example:"key BRM control"`
+	Action  string          `json:"action" example:"report"`
+	Subject string          `json:"subject" example:"scan 1042 of SIM J0412+1833 on BRM"`
+	Before  json.RawMessage `json:"before,omitempty" doc:"what it was"`
+	After   json.RawMessage `json:"after,omitempty" doc:"what it is now"`
 }
 
-type journalInput struct {
-	Before int64 `query:"before" minimum:"0" doc:"only lines before this id: the next page"`
-	Limit  int   `query:"limit" minimum:"1" maximum:"500" default:"100"`
-}
-
-type journalOutput struct{ Body []Entry }
-
-func (a *API) journal(ctx context.Context, in *journalInput) (*journalOutput, error) {
+func (a *API) journal(ctx context.Context, in *PageInput) (*listOutput[Entry], error) {
 	ref, err := a.store.LiveCampaign(ctx)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	list, err := a.store.Journal(ctx, ref.ID, in.Before, in.Limit)
+	key, err := in.keyOf()
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	out := &journalOutput{Body: []Entry{}}
-	for _, e := range list {
-		out.Body = append(out.Body, Entry(e))
+	var before int64 // 0: from the newest
+	if key != "" {
+		if before, err = strconv.ParseInt(key, 10, 64); err != nil || before < 1 {
+			return nil, badCursor()
+		}
 	}
-	return out, nil
+	// One more than wanted tells whether there is another page.
+	lines, err := a.store.Journal(ctx, ref.ID, before, in.limit()+1)
+	if err != nil {
+		return nil, err
+	}
+	out := list[Entry]{Items: []Entry{}}
+	for i, e := range lines {
+		if i == in.limit() {
+			out.Next = cursorOf(strconv.FormatInt(lines[i-1].ID, 10))
+			break
+		}
+		out.Items = append(out.Items, Entry(e))
+	}
+	return &listOutput[Entry]{out}, nil
 }

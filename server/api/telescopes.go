@@ -2,144 +2,123 @@ package api
 
 import (
 	"context"
-	"fmt"
 	"net/http"
-	"strings"
-	"time"
-
-	"github.com/danielgtaylor/huma/v2"
 
 	"cadencewright/scheduler"
 	"cadencewright/server/runsheet"
+	"cadencewright/server/store"
 )
 
-// Telescope is a telescope in brief.
+// Telescope is a telescope as the API shows it.
 type Telescope struct {
-	Code         string     `json:"code" example:"BRM"`
-	Name         string     `json:"name"`
-	LongitudeDeg float64    `json:"longitude_deg" doc:"east-positive"`
-	LatitudeDeg  float64    `json:"latitude_deg" doc:"geodetic"`
-	HeightM      float64    `json:"height_m"`
-	Timezone     string     `json:"timezone"`
-	Mount        string     `json:"mount" enum:"altaz,equatorial,transit"`
-	Receivers    []Receiver `json:"receivers"`
+	Code            string     `json:"code" example:"BRM"`
+	Name            string     `json:"name" example:"Bramstead"`
+	LongitudeDeg    float64    `json:"longitude_deg" doc:"east-positive" example:"-2.31"`
+	LatitudeDeg     float64    `json:"latitude_deg" example:"53.2"`
+	HeightM         float64    `json:"height_m" doc:"above the ellipsoid" example:"80"`
+	Timezone        string     `json:"timezone" example:"Europe/London"`
+	Mount           string     `json:"mount" enum:"altaz,equatorial,transit"`
+	ElevationMinDeg float64    `json:"elevation_min_deg" example:"15"`
+	ElevationMaxDeg float64    `json:"elevation_max_deg" example:"85"`
+	SunMinDeg       float64    `json:"sun_min_deg" doc:"least separation from the Sun" example:"10"`
+	SetupS          float64    `json:"setup_s" doc:"before the first scan of a block" example:"300"`
+	CalS            float64    `json:"cal_s" doc:"calibration before every scan" example:"60"`
+	Receivers       []Receiver `json:"receivers" nullable:"false"`
 }
 
-// Receiver is a receiver in brief.
+// Receiver is a receiver as the API shows it.
 type Receiver struct {
 	Code         string   `json:"code" example:"L1"`
-	Bands        []string `json:"bands"`
-	FreqMHz      float64  `json:"freq_mhz"`
-	BandwidthMHz float64  `json:"bandwidth_mhz"`
+	Bands        []string `json:"bands" nullable:"false" example:"[\"L\"]"`
+	FreqMHz      float64  `json:"freq_mhz" doc:"centre" example:"1400"`
+	BandwidthMHz float64  `json:"bandwidth_mhz" example:"400"`
 }
 
-// NowAnswer is what a telescope is to do at this moment.
-type NowAnswer struct {
-	Telescope  string    `json:"telescope"`
-	ServerTime time.Time `json:"server_time" doc:"the service's clock: compare it with yours"`
-	Now        *Scan     `json:"now" doc:"the scan under way or due; null: none"`
-	Next       *Scan     `json:"next" doc:"the scan after that; null: none is planned"`
+func telescopeView(t *scheduler.Telescope) Telescope {
+	v := Telescope{Code: t.Code, Name: t.Name, LongitudeDeg: t.LongitudeDeg, LatitudeDeg: t.LatitudeDeg, HeightM: t.HeightM, Timezone: t.Timezone,
+		Mount: string(t.Mount), ElevationMinDeg: t.ElevationMinDeg, ElevationMaxDeg: t.ElevationMaxDeg, SunMinDeg: t.SunMinDeg, SetupS: t.SetupS, CalS: t.CalS,
+		Receivers: []Receiver{}}
+	for i := range t.Receivers {
+		r := &t.Receivers[i]
+		v.Receivers = append(v.Receivers, Receiver{r.Code, r.Bands, r.FreqMHz, r.BandwidthMHz})
+	}
+	return v
 }
 
-type nowInput struct {
-	Code        string `path:"code" maxLength:"100" example:"BRM" doc:"a telescope's code"`
-	IfNoneMatch string `header:"If-None-Match"`
+func (a *API) telescopes() {
+	register(a, operation("campaign", http.MethodGet, "/telescopes", "list-telescopes", "The campaign's telescopes",
+		"All telescopes of the live campaign with their receivers.", 404, 422), exampleList(exampleTelescope), a.listTelescopes)
+	register(a, operation("campaign", http.MethodGet, "/telescopes/{code}", "get-telescope", "One telescope", "A telescope of the live campaign.", 404), exampleTelescope, a.getTelescope)
+	register(a, notModified(operation("control", http.MethodGet, "/telescopes/{code}/now", "now", "What to do now and next",
+		"The scan that is under way or due at the telescope, and the one after it. With If-None-Match the answer is 304 while neither has changed. "+
+			"A scan that was reported over is neither.", 404)), exampleNow, a.now)
+	register(a, operation("control", http.MethodGet, "/telescopes/{code}/run-sheets/{night}", "run-sheet", "A night's run sheet",
+		"Local noon to local noon, named by the local date on which the night begins. A sheet commands nothing: the operator on duty, local safety rules "+
+			"and interlocks come first.", 404, 422), exampleSheet, a.runSheet)
 }
 
-type nowOutput struct {
-	Status       int
-	ETag         string `header:"ETag"`
-	CacheControl string `header:"Cache-Control"`
-	Body         *NowAnswer
-}
-
-func (a *API) telescopes(h huma.API) {
-	huma.Register(h, operation(http.MethodGet, "/telescopes", "list-telescopes", "The campaign's telescopes", "All telescopes of the live campaign with their receivers.", 404), a.listTelescopes)
-	huma.Register(h, operation(http.MethodGet, "/telescopes/{code}/now", "now", "What to do now and next",
-		"The scan that is under way or due at the telescope, and the one after it. With If-None-Match the answer is 304 while neither has changed. A scan that was reported over is neither.", 404), a.now)
-	huma.Register(h, operation(http.MethodGet, "/telescopes/{code}/run-sheets/{night}", "run-sheet", "A night's run sheet",
-		"Local noon to local noon, named by the local date on which the night begins.", 404, 422), a.runSheet)
-}
-
-type listTelescopesOutput struct{ Body []Telescope }
-
-func (a *API) listTelescopes(ctx context.Context, _ *struct{}) (*listTelescopesOutput, error) {
+// live is the live campaign as it stands.
+func (a *API) live(ctx context.Context) (*scheduler.Campaign, store.CampaignRef, error) {
 	ref, err := a.store.LiveCampaign(ctx)
 	if err != nil {
-		return nil, fail(err)
+		return nil, ref, err
 	}
-	c, _, err := a.store.LoadCampaign(ctx, ref.ID)
+	return a.store.LoadCampaign(ctx, ref.ID)
+}
+
+func (a *API) listTelescopes(ctx context.Context, in *PageInput) (*listOutput[Telescope], error) {
+	c, _, err := a.live(ctx)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	out := &listTelescopesOutput{Body: []Telescope{}}
+	all := make([]Telescope, 0, len(c.Telescopes))
 	for i := range c.Telescopes {
-		t := &c.Telescopes[i]
-		v := Telescope{Code: t.Code, Name: t.Name, LongitudeDeg: t.LongitudeDeg, LatitudeDeg: t.LatitudeDeg, HeightM: t.HeightM, Timezone: t.Timezone, Mount: string(t.Mount)}
-		for j := range t.Receivers {
-			r := &t.Receivers[j]
-			v.Receivers = append(v.Receivers, Receiver{r.Code, r.Bands, r.FreqMHz, r.BandwidthMHz})
-		}
-		out.Body = append(out.Body, v)
+		all = append(all, telescopeView(&c.Telescopes[i]))
 	}
-	return out, nil
+	page, err := pageOf(all, *in, func(t *Telescope) string { return t.Code }, nil)
+	return &listOutput[Telescope]{page}, err
 }
 
-// now answers what a control script asks again and again.
-func (a *API) now(ctx context.Context, in *nowInput) (*nowOutput, error) {
-	at := a.clock().UTC()
-	now, next, err := a.store.NowNext(ctx, in.Code, at)
+// CodeInput names a telescope in a path.
+type CodeInput struct {
+	Code string `path:"code" maxLength:"100" example:"BRM" doc:"a telescope's code"`
+}
+
+type telescopeOutput struct{ Body Telescope }
+
+func (a *API) getTelescope(ctx context.Context, in *CodeInput) (*telescopeOutput, error) {
+	c, _, err := a.live(ctx)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	if now == nil && next == nil { // nothing planned, or no such telescope
-		ok, err := a.store.HasTelescope(ctx, in.Code)
-		if err != nil {
-			return nil, fail(err)
-		}
-		if !ok {
-			return nil, fail(scheduler.Errorf(scheduler.ErrNotFound, "there is no telescope %s in the live campaign", in.Code))
-		}
+	t := c.TelescopeByCode(in.Code)
+	if t == nil {
+		return nil, noTelescope(in.Code)
 	}
-	body := &NowAnswer{Telescope: in.Code, ServerTime: at}
-	tag := "n"
-	if now != nil {
-		v := scanView(now)
-		body.Now, tag = &v, tag+fmt.Sprintf("%d.%d", v.ID, v.Version)
-	}
-	if next != nil {
-		v := scanView(next)
-		body.Next, tag = &v, tag+fmt.Sprintf("-%d.%d", v.ID, v.Version)
-	}
-	out := &nowOutput{Status: http.StatusOK, ETag: `"` + tag + `"`, CacheControl: "private, no-cache", Body: body}
-	if matches(in.IfNoneMatch, out.ETag) {
-		out.Status, out.Body = http.StatusNotModified, nil
-	}
-	return out, nil
+	return &telescopeOutput{telescopeView(t)}, nil
 }
 
-// matches tells whether a header lists an ETag.
-func matches(header, tag string) bool {
-	for part := range strings.SplitSeq(header, ",") {
-		part = strings.TrimPrefix(strings.TrimSpace(part), "W/")
-		if part == tag || part == "*" {
-			return true
-		}
+func noTelescope(code string) error {
+	return scheduler.Errorf(scheduler.ErrNotFound, "there is no telescope %.100q in the live campaign", code)
+}
+
+// known makes sure that there is such a telescope.
+func (a *API) known(ctx context.Context, code string) error {
+	ok, err := a.store.HasTelescope(ctx, code)
+	if err == nil && !ok {
+		err = noTelescope(code)
 	}
-	return false
+	return err
 }
 
 type sheetInput struct {
-	Code  string `path:"code" maxLength:"100" example:"BRM"`
-	Night string `path:"night" example:"2027-01-18" doc:"local date on which the night begins"`
+	Code  string `path:"code" maxLength:"100" example:"BRM" doc:"a telescope's code"`
+	Night string `path:"night" maxLength:"20" example:"2027-01-18" doc:"local date on which the night begins"`
 }
 
 type sheetOutput struct{ Body *runsheet.Sheet }
 
 func (a *API) runSheet(ctx context.Context, in *sheetInput) (*sheetOutput, error) {
 	s, err := a.sheets.Sheet(ctx, in.Code, in.Night)
-	if err != nil {
-		return nil, fail(err)
-	}
-	return &sheetOutput{s}, nil
+	return &sheetOutput{s}, err
 }

@@ -22,7 +22,7 @@ type Scan struct {
 	MotorAzDeg *float64  `json:"motor_az_deg,omitempty" doc:"azimuth of the drive at the start, whole turns included; alt-azimuth mounts"`
 	Pinned     bool      `json:"pinned"`
 	TOAUs      float64   `json:"toa_us" doc:"predicted TOA uncertainty in microseconds; 0: not detectable" example:"0.84"`
-	Earns      []Earning `json:"earns"`
+	Earns      []Earning `json:"earns" nullable:"false"`
 	State      string    `json:"state" enum:"planned,observing,done,partial,lost,dropped"`
 	Live       bool      `json:"live" doc:"part of the plan that is issued now"`
 	Version    int64     `json:"version"`

@@ -4,63 +4,123 @@ import (
 	"context"
 	"net/http"
 	"strconv"
-	"strings"
-
-	"github.com/danielgtaylor/huma/v2"
+	"time"
 
 	"cadencewright/scheduler"
 	"cadencewright/server/auth"
-	"cadencewright/server/httperr"
+	"cadencewright/server/logline"
 	"cadencewright/server/store"
 )
 
-func (a *API) weeks(h huma.API) {
-	huma.Register(h, operation(http.MethodGet, "/weeks/{week}/plans", "list-plans", "A week's plans", "Drafts and issued plans of an ISO week, the newest first.", 404, 422), a.listPlans)
-	op := operation(http.MethodPost, "/weeks/{week}/plan", "plan-week", "Plan a week",
-		"Starts a background job; it ends with a draft. A week has one job at a time.", 404, 409, 422)
+func (a *API) weeks() {
+	register(a, operation("plans", http.MethodGet, "/weeks/{week}", "get-week", "A week at a glance",
+		"The plan that is issued, the newest draft and the newest planning job of an ISO week.", 404, 422), exampleWeek, a.getWeek)
+	register(a, operation("plans", http.MethodGet, "/weeks/{week}/plans", "list-plans", "A week's plans",
+		"Drafts and issued plans of an ISO week, the newest first; the newest 200 are kept in reach.", 404, 422), exampleList(examplePlan), a.listPlans)
+	op := operation("plans", http.MethodPost, "/weeks/{week}/plan", "plan-week", "Plan a week",
+		"Starts a background job; it ends with a draft. A week has one job at a time.", 404, 409, 413, 415, 422)
 	op.DefaultStatus = http.StatusAccepted
-	huma.Register(h, op, a.planWeek)
-	huma.Register(h, operation(http.MethodGet, "/jobs/{id}", "get-job", "A planning job", "Its progress: score rising, bound falling.", 404), a.getJob)
-	huma.Register(h, operation(http.MethodPost, "/jobs/{id}/stop", "stop-job", "Stop a planning job", "It ends soon, with the best plan so far as its draft.", 404), a.stopJob)
+	register(a, withRequest(op, PlanRequest{Seed: 7}), exampleJob, a.planWeek)
+	register(a, operation("plans", http.MethodGet, "/jobs/{id}", "get-job", "A planning job", "Its progress: score rising, bound falling.", 404), exampleJob, a.getJob)
+	register(a, operation("plans", http.MethodPost, "/jobs/{id}/stop", "stop-job", "Stop a planning job",
+		"It ends soon, with the best plan so far as its draft. One that has ended already is left as it is.", 404), exampleJob, a.stopJob)
 }
 
-type weekInput struct {
+// WeekInput names a week in a path.
+type WeekInput struct {
 	Week string `path:"week" pattern:"^\\d{4}-W\\d{2}$" example:"2027-W03" doc:"ISO week"`
 }
 
-type plansOutput struct{ Body []Plan }
+// Week is a week at a glance.
+type Week struct {
+	Week   string    `json:"week" example:"2027-W03"`
+	From   time.Time `json:"from" doc:"Monday 00:00 UTC, inclusive"`
+	To     time.Time `json:"to" doc:"exclusive"`
+	Issued *Plan     `json:"issued,omitempty" doc:"the plan that telescopes follow; left out: none"`
+	Draft  *Plan     `json:"draft,omitempty" doc:"the newest draft; left out: none"`
+	Job    *Job      `json:"job,omitempty" doc:"the newest planning job; left out: none"`
+}
 
-func (a *API) listPlans(ctx context.Context, in *weekInput) (*plansOutput, error) {
+type weekOutput struct{ Body Week }
+
+// maxPlans is how many plans of a week are looked at.
+const maxPlans = 200
+
+func (a *API) getWeek(ctx context.Context, in *WeekInput) (*weekOutput, error) {
 	ref, h, err := a.week(ctx, in.Week)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	list, err := a.store.PlansOf(ctx, ref.ID, h, 100)
+	plans, err := a.store.PlansOf(ctx, ref.ID, h, maxPlans)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	out := &plansOutput{Body: []Plan{}}
-	for i := range list {
-		out.Body = append(out.Body, planView(&list[i]))
+	out := Week{Week: scheduler.WeekName(h.From), From: h.From, To: h.To}
+	for i := range plans {
+		v := planView(&plans[i])
+		switch {
+		case v.State == store.PlanIssued && out.Issued == nil:
+			out.Issued = &v
+		case v.State == store.PlanDraft && out.Draft == nil:
+			out.Draft = &v
+		}
 	}
-	return out, nil
+	j, err := a.store.LastJob(ctx, ref.ID, h)
+	if err != nil {
+		return nil, err
+	}
+	if j != nil {
+		v := jobView(j)
+		out.Job = &v
+	}
+	return &weekOutput{out}, nil
+}
+
+type plansInput struct {
+	WeekInput
+	PageInput
+}
+
+func (a *API) listPlans(ctx context.Context, in *plansInput) (*listOutput[Plan], error) {
+	ref, h, err := a.week(ctx, in.Week)
+	if err != nil {
+		return nil, err
+	}
+	plans, err := a.store.PlansOf(ctx, ref.ID, h, maxPlans)
+	if err != nil {
+		return nil, err
+	}
+	all := make([]Plan, 0, len(plans))
+	for i := range plans {
+		all = append(all, planView(&plans[i]))
+	}
+	older := func(p *Plan, key string) bool {
+		id, err := strconv.ParseInt(key, 10, 64)
+		return err == nil && p.ID < id
+	}
+	page, err := pageOf(all, in.PageInput, func(p *Plan) string { return strconv.FormatInt(p.ID, 10) }, older)
+	return &listOutput[Plan]{page}, err
 }
 
 // week is the live campaign and a week's horizon.
 func (a *API) week(ctx context.Context, name string) (store.CampaignRef, scheduler.Horizon, error) {
+	logline.From(ctx).Set("week", name)
 	h, err := scheduler.WeekHorizon(name)
 	if err != nil {
-		return store.CampaignRef{}, h, err
+		return store.CampaignRef{}, h, scheduler.Problems{{Pointer: "week", Message: err.Error()}}
 	}
 	ref, err := a.store.LiveCampaign(ctx)
 	return ref, h, err
 }
 
+// PlanRequest says how to plan.
+type PlanRequest struct {
+	Seed int64 `json:"seed,omitempty" minimum:"0" maximum:"9007199254740991" doc:"of the search's random choices; the same seed gives the same plan" example:"7"`
+}
+
 type planWeekInput struct {
-	Week string `path:"week" pattern:"^\\d{4}-W\\d{2}$" example:"2027-W03"`
-	Body struct {
-		Seed int64 `json:"seed,omitempty" minimum:"0" doc:"of the search's random choices; the same seed gives the same plan"`
-	} `required:"false"`
+	WeekInput
+	Body *PlanRequest
 }
 
 type jobOutput struct{ Body Job }
@@ -68,11 +128,15 @@ type jobOutput struct{ Body Job }
 func (a *API) planWeek(ctx context.Context, in *planWeekInput) (*jobOutput, error) {
 	ref, h, err := a.week(ctx, in.Week)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
-	j, err := a.planner.Plan(ctx, ref.ID, h, in.Body.Seed, auth.From(ctx).Actor())
+	var seed int64
+	if in.Body != nil {
+		seed = in.Body.Seed
+	}
+	j, err := a.planner.Plan(ctx, ref.ID, h, seed, auth.From(ctx).Actor())
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
 	return &jobOutput{jobView(&j)}, nil
 }
@@ -84,90 +148,21 @@ type jobInput struct {
 func (a *API) getJob(ctx context.Context, in *jobInput) (*jobOutput, error) {
 	j, err := a.store.Job(ctx, in.ID)
 	if err != nil {
-		return nil, fail(err)
+		return nil, err
 	}
 	return &jobOutput{jobView(&j)}, nil
 }
 
 func (a *API) stopJob(ctx context.Context, in *jobInput) (*jobOutput, error) {
-	if err := a.store.StopJob(ctx, in.ID, auth.From(ctx).Actor()); err != nil {
-		return nil, fail(err)
+	j, err := a.store.Job(ctx, in.ID)
+	if err != nil {
+		return nil, err
+	}
+	if !j.Active() { // it ended by itself: no fault of who asked
+		return &jobOutput{jobView(&j)}, nil
+	}
+	if err := a.store.StopJob(ctx, in.ID, auth.From(ctx).Actor()); err != nil && scheduler.KindOf(err) != scheduler.ErrNotFound {
+		return nil, err
 	}
 	return a.getJob(ctx, in)
-}
-
-func (a *API) plans(h huma.API) {
-	huma.Register(h, operation(http.MethodGet, "/plans/{id}", "get-plan", "One plan", "What is known of it, with its ETag.", 404), a.getPlan)
-	huma.Register(h, operation(http.MethodGet, "/plans/{id}/file", "get-plan-file", "A plan as a file", "The plan file (plan/1), with its certificate, for re-checking elsewhere.", 404), a.planFile)
-	huma.Register(h, operation(http.MethodGet, "/plans/{id}/scans", "list-plan-scans", "A plan's scans", "All scans with their states.", 404), a.planScans)
-	huma.Register(h, operation(http.MethodPost, "/plans/{id}/issue", "issue-plan", "Issue a draft",
-		"Makes the draft what the telescopes follow; the plan before it is superseded. Needs If-Match with the draft's ETag.", 404, 409, 412, 428), a.issue)
-}
-
-type planOutput struct {
-	ETag string `header:"ETag"`
-	Body Plan
-}
-
-func planAnswer(p *store.PlanInfo) *planOutput {
-	return &planOutput{ETag: `"` + strconv.FormatInt(p.Version, 10) + `"`, Body: planView(p)}
-}
-
-type planInput struct {
-	ID int64 `path:"id" minimum:"1" example:"17"`
-}
-
-func (a *API) getPlan(ctx context.Context, in *planInput) (*planOutput, error) {
-	info, _, _, err := a.store.Plan(ctx, in.ID)
-	if err != nil {
-		return nil, fail(err)
-	}
-	return planAnswer(&info), nil
-}
-
-type fileOutput struct {
-	ContentType        string `header:"Content-Type"`
-	ContentDisposition string `header:"Content-Disposition"`
-	Body               []byte
-}
-
-func (a *API) planFile(ctx context.Context, in *planInput) (*fileOutput, error) {
-	info, p, _, err := a.store.Plan(ctx, in.ID)
-	if err != nil {
-		return nil, fail(err)
-	}
-	b, err := scheduler.WritePlan(p)
-	if err != nil {
-		return nil, fail(err)
-	}
-	name := "plan-" + scheduler.WeekName(info.From) + "-" + strconv.FormatInt(info.ID, 10) + ".json"
-	return &fileOutput{"application/json", `attachment; filename="` + name + `"`, b}, nil
-}
-
-func (a *API) planScans(ctx context.Context, in *planInput) (*scansOutput, error) {
-	_, _, scans, err := a.store.Plan(ctx, in.ID)
-	if err != nil {
-		return nil, fail(err)
-	}
-	return &scansOutput{scanViews(scans)}, nil
-}
-
-type issueInput struct {
-	ID      int64  `path:"id" minimum:"1" example:"17"`
-	IfMatch string `header:"If-Match" doc:"the draft's ETag" example:"\"1\""`
-}
-
-func (a *API) issue(ctx context.Context, in *issueInput) (*planOutput, error) {
-	if in.IfMatch == "" {
-		return nil, fail(httperr.ErrNeedsVersion)
-	}
-	version, err := strconv.ParseInt(strings.Trim(strings.TrimPrefix(in.IfMatch, "W/"), `"`), 10, 64)
-	if err != nil {
-		version = -1 // no version of ours: stale
-	}
-	info, err := a.store.Issue(ctx, in.ID, version, auth.From(ctx).Actor())
-	if err != nil {
-		return nil, fail(err)
-	}
-	return planAnswer(&info), nil
 }

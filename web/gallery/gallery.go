@@ -68,6 +68,9 @@ func Sheets() []Sheet {
 func Handler() http.Handler {
 	mux := http.NewServeMux()
 	mux.Handle(static.Prefix, static.Handler())
+	mux.HandleFunc("GET /weeks/"+week+"/job", func(w http.ResponseWriter, _ *http.Request) {
+		page.JobFragment(w, planningWeek().Job)
+	})
 	index := bytes.NewBufferString("<!DOCTYPE html><html lang=en><title>Gallery</title><ul>")
 	for _, s := range Sheets() {
 		index.WriteString(`<li><a href="/` + s.Name + `">` + s.Name + "</a>")

@@ -66,13 +66,14 @@ func verdict(p view.Plan) string {
 		return "Nothing is due in this week, so there is nothing to earn."
 	}
 	s := "It earns " + view.Percent(p.Score/p.Possible) + " of the weight of all that is due. "
+	more := view.Figure(p.Bound - p.Score)
 	switch gap := p.Gap(); {
 	case gap < 5e-4:
-		s += "That is the best possible plan for these blocks: no other can earn more."
+		s += "It is the best possible plan for these blocks, or nearer to it than 0.05 %."
 	case gap < 0.02:
-		s += "No plan for these blocks can earn over " + view.Percent(gap) + " of the bound more: it is as good as the best."
+		s += "It is near the best possible: another plan could gain " + more + " at the very most."
 	default:
-		s += "No plan can earn more than the bound, so a better one could gain " + view.Figure(p.Bound-p.Score) + " at the very most."
+		s += "Another plan could gain " + more + " at the very most; often the bound is too high and the best plan nearer."
 	}
 	return s
 }

@@ -195,9 +195,9 @@ func TestBlockRowCurve(t *testing.T) {
 	if len(curve) != 1 || !strings.HasPrefix(curve[0].attr["d"], "M") || strings.Contains(curve[0].attr["d"], "NaN") {
 		t.Fatalf("curve %v", curve)
 	}
-	// Below the horizon, from minute 220 on, there is nothing to draw: 22 points of 10 minutes.
-	if n := strings.Count(curve[0].attr["d"], "L"); n != 20 && n != 21 {
-		t.Errorf("%d strokes, want those of elevations from 0 up", n)
+	// It is up from minute 30 to 210: 19 points, 18 strokes.
+	if n := strings.Count(curve[0].attr["d"], "L"); n != 18 {
+		t.Errorf("%d strokes, want the 18 of elevations from 0 up", n)
 	}
 	if label := of(es, "curve-label"); len(label) != 1 || label[0].text != "0412+1833 45°" {
 		t.Errorf("label %v", label)

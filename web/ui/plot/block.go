@@ -2,9 +2,9 @@ package plot
 
 import (
 	"fmt"
+	"html"
 	"slices"
 	"strconv"
-	"strings"
 	"time"
 
 	"cadencewright/web/view"
@@ -114,9 +114,7 @@ func (c *canvas) bar(a axis, s view.Scan, week string) {
 	title := fmt.Sprintf("%s, %s, %s to %s UTC, %s, %s", s.Source, s.Receiver, view.Clock(s.Start), view.Clock(s.End),
 		stateWord(s), view.Micros(s.TOAUs))
 	c.tag("a", "class", "scan "+s.State, "href", ScanPath(week, s.ID), "data-t", strconv.FormatInt(s.Start.Unix(), 10))
-	c.WriteString("<title>")
-	c.WriteString(strings.NewReplacer("&", "&amp;", "<", "&lt;").Replace(title))
-	c.WriteString("</title>")
+	c.WriteString("<title>" + html.EscapeString(title) + "</title>")
 	c.rect("bar", x, barTop, w, barH, "rx", "1.5")
 	switch s.State {
 	case "lost", "dropped":

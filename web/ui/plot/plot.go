@@ -135,14 +135,15 @@ func (c *canvas) path(class string, xs, ys []float64) {
 
 // num writes a coordinate with a decimal at most: pages stay small.
 func num(x float64) string {
-	s := strconv.FormatFloat(x, 'f', 1, 64)
-	if t, ok := strings.CutSuffix(s, ".0"); ok {
-		s = t
+	tenths := int(math.Round(x * 10))
+	if tenths%10 == 0 {
+		return strconv.Itoa(tenths / 10)
 	}
-	if s == "-0" {
-		return "0"
+	sign := ""
+	if tenths < 0 {
+		sign, tenths = "-", -tenths
 	}
-	return s
+	return sign + strconv.Itoa(tenths/10) + "." + strconv.Itoa(tenths%10)
 }
 
 // axis maps time onto x.

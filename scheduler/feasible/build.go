@@ -54,7 +54,6 @@ type builder struct {
 
 	// Buffers that every block uses again.
 	track sky.Track
-	motor []float64
 	ok    []bool
 	bad   []int
 	rate  []float64

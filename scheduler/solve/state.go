@@ -1,10 +1,6 @@
 package solve
 
-import (
-	"slices"
-
-	"cadencewright/scheduler/feasible"
-)
+import "slices"
 
 // state is a plan under way: the scans of every block, and what each goal
 // earns from them. Its score is always exact.
@@ -127,18 +123,6 @@ func (s *state) restore(blocks []int, kept [][]*scan) {
 	for i, b := range blocks {
 		s.set(b, kept[i])
 	}
-}
-
-// gap is the least number of steps between the end of one scan and the start
-// of the next in a block: travel, receiver change and calibration.
-func gap(b *feasible.Block, gridMin int, a, z *scan) int {
-	pa, pz := &b.Places[a.place], &b.Places[z.place]
-	ia, iz := a.start+a.steps-pa.Lo, z.start-pz.Lo
-	s := b.Mount.SlewS(pa.Axis1[ia]+360*float64(a.turn), pa.Axis2[ia], pz.Axis1[iz]+360*float64(z.turn), pz.Axis2[iz]) + b.Mount.CalS
-	if a.rx != z.rx {
-		s += b.Mount.SwitchS
-	}
-	return ceilSteps(s, gridMin)
 }
 
 // ceilSteps is seconds in grid steps, rounded up; a rounding error of the

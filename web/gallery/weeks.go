@@ -64,7 +64,7 @@ func planOf(state view.PlanState) *view.Plan {
 	p := &view.Plan{
 		ID: 42, Version: 3, State: state, MadeAt: now.Add(-25 * time.Minute), MadeBy: "Imre Oduya",
 		Score: 71.84, Possible: 96.4, Bound: 73.1, Scans: 52, Minutes: 1985, Free: 604,
-		Status: "The search stopped when its effort was used up.",
+		Status: "effort spent",
 	}
 	if state != view.Draft {
 		p.Revision, p.IssuedAt, p.IssuedBy = 2, now.Add(-20*time.Minute), "Imre Oduya"

@@ -1061,7 +1061,7 @@ func pulsarFacts(v view.Source) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = ui.Fact("Sun no nearer than", view.Degrees(v.SunMinDeg)).Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = ui.Fact("Sun no nearer than", sunLimit(v.SunMinDeg)).Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

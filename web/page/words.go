@@ -253,3 +253,11 @@ func sheetPlan(v view.RunSheet) string {
 	}
 	return "revision " + strconv.Itoa(v.PlanRevision) + ", issued " + view.Moment(v.IssuedAt) + " UTC" + by(v.IssuedBy)
 }
+
+// sunLimit is a source's own limit; the telescopes have theirs besides.
+func sunLimit(deg float64) string {
+	if deg <= 0 {
+		return "as the telescope says"
+	}
+	return view.Degrees(deg)
+}

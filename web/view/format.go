@@ -184,12 +184,15 @@ func Plural(n int, noun string) string {
 }
 
 // Days is how long before now something was, "9.2 days ago", or how long
-// until, "in 3.1 days"; None for the zero time.
+// until, "in 3.1 days", or "now"; None for the zero time.
 func Days(t, now time.Time) string {
 	if t.IsZero() {
 		return None
 	}
 	d := now.Sub(t).Hours() / 24
+	if d > -0.05 && d < 0.05 {
+		return "now"
+	}
 	if d >= 0 {
 		return Fixed(d, 1) + " days ago"
 	}

@@ -27,6 +27,7 @@ func TestTimes(t *testing.T) {
 		{"over days", Range(Span{at, at.Add(30 * time.Hour)}), "Mon 18 Jan 20:05 – Wed 20 Jan 02:05"},
 		{"ago", Days(at, at.Add(221*time.Hour)), "9.2 days ago"},
 		{"ahead", Days(at, at.Add(-36*time.Hour)), "in 1.5 days"},
+		{"now", Days(at, at.Add(-time.Hour)), "now"},
 		{"never", Days(time.Time{}, at), None},
 	} {
 		if c.got != c.want {

@@ -58,7 +58,7 @@ type Plan struct {
 	Scans    int
 	Minutes  int    // under scans
 	Free     int    // minutes of blocks left free
-	Status   string // how the search ended, one short clause; may be empty
+	Status   string // how the search ended, a few words without full stop; may be empty
 	// Stale says why the plan no longer fits the campaign; empty: it fits.
 	Stale string
 }

@@ -242,8 +242,8 @@ func TestListen(t *testing.T) {
 		addr   string
 		want   []string
 	}{
-		{Listen, l.Addr().String(), []string{"is in use by another program", "CADENCEWRIGHT_ADDR", l.Addr().String()}},
-		{ListenMetrics, l.Addr().String(), []string{"is in use", "CADENCEWRIGHT_METRICS_ADDR"}},
+		{Listen, l.Addr().String(), []string{"cannot listen on " + l.Addr().String(), "another program does", "CADENCEWRIGHT_ADDR"}},
+		{ListenMetrics, l.Addr().String(), []string{"another program does", "CADENCEWRIGHT_METRICS_ADDR"}},
 		{Listen, "192.0.2.1:1", []string{"cannot listen on 192.0.2.1:1", "CADENCEWRIGHT_ADDR"}},
 	} {
 		got, err := c.listen(c.addr)

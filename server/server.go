@@ -94,9 +94,9 @@ func listen(addr, setting string) (net.Listener, error) {
 	case err == nil:
 		return l, nil
 	case errors.Is(err, syscall.EADDRINUSE):
-		return nil, fmt.Errorf("%s is in use by another program; stop that one, or choose another address with %s", addr, setting)
+		return nil, fmt.Errorf("cannot listen on %s: another program does; stop that one, or choose another address with %s", addr, setting)
 	case errors.Is(err, syscall.EACCES):
-		return nil, fmt.Errorf("listening on %s is not allowed to this user; choose a port above 1023 with %s", addr, setting)
+		return nil, fmt.Errorf("cannot listen on %s: this user may not; choose a port above 1023 with %s", addr, setting)
 	}
 	return nil, fmt.Errorf("cannot listen on %s: %w; choose another address with %s", addr, err, setting)
 }

@@ -1,18 +1,14 @@
 package main
 
 import (
-	"bufio"
 	"context"
 	"errors"
 	"flag"
 	"fmt"
-	"io"
 	"net/http"
-	"strings"
 	"time"
 
 	"cadencewright/scheduler"
-	"cadencewright/server/auth"
 	"cadencewright/server/config"
 )
 
@@ -114,110 +110,6 @@ var exportCommand = command{
 	},
 }
 
-var userCommand = command{
-	name: "user", args: "NAME", short: "add a person, or make them a new sign-in link",
-	long: `Adds a person with a role, or finds the one of that name, and prints a link that
-signs them in once within a day. --password reads a password from standard input
-instead, for signing in by name. The first coordinator is made this way.`,
-	examples: []string{"cadencewright user \"Ada Example\" --role coordinator", "cadencewright user \"Bo Example\" --role observer --telescope BRM"},
-	setup: func(flags *flag.FlagSet) action {
-		role := flags.String("role", string(auth.RoleReader), "`ROLE` of a new person: coordinator, observer or reader")
-		tel := flags.String("telescope", "", "`CODE` of the telescope of a new observer; all if left out")
-		password := flags.Bool("password", false, "read a password from standard input")
-		return func(ctx context.Context, std stdio, args []string) error {
-			if err := exactly(args, "NAME"); err != nil {
-				return err
-			}
-			if err := oneOf("role", *role, "coordinator", "observer", "reader"); err != nil {
-				return err
-			}
-			return withDatabase(ctx, std, func(db *database, cfg config.Config) error {
-				return addUser(ctx, std, db, cfg, args[0], *role, *tel, *password)
-			})
-		}
-	},
-}
-
-func addUser(ctx context.Context, std stdio, db *database, cfg config.Config, name, role, tel string, password bool) error {
-	p, err := db.store.PersonByName(ctx, name)
-	if errors.Is(err, scheduler.ErrNotFound) {
-		var tels []string
-		if tel != "" {
-			tels = []string{tel}
-		}
-		p, err = db.store.AddPerson(ctx, name, role, tels, "", "command line")
-		if err == nil {
-			fmt.Fprintf(std.out, "%s is a %s now\n", name, role)
-		}
-	}
-	if err != nil {
-		return err
-	}
-	if password {
-		line, err := readLine(std.in)
-		if err != nil {
-			return err
-		}
-		hash, err := auth.HashPassword(line)
-		if err != nil {
-			return err
-		}
-		if err := db.store.SetPassword(ctx, p.ID, hash, "command line"); err != nil {
-			return err
-		}
-		fmt.Fprintln(std.out, "the password is set, and all sessions of", name, "have ended")
-		return nil
-	}
-	address := cfg.BaseURL
-	if address == "" {
-		address = "http://" + cfg.Addr
-	}
-	link, err := oneTimeLink(ctx, db.store, p, address)
-	if err == nil {
-		fmt.Fprintln(std.out, "sign in once with", link)
-	}
-	return err
-}
-
-var keyCommand = command{
-	name: "key", args: "NAME", short: "make or revoke a control script's key",
-	long: `Makes a key for the control script of one telescope and shows it once; only its
-hash is kept. --revoke ends the key of that name.`,
-	examples: []string{"cadencewright key \"BRM control\" --telescope BRM", "cadencewright key \"BRM control\" --revoke"},
-	setup: func(flags *flag.FlagSet) action {
-		tel := flags.String("telescope", "", "`CODE` of the telescope that the key is for")
-		revoke := flags.Bool("revoke", false, "end the key")
-		return func(ctx context.Context, std stdio, args []string) error {
-			if err := exactly(args, "NAME"); err != nil {
-				return err
-			}
-			if *tel == "" && !*revoke {
-				return usagef("--telescope is missing: a key is for one telescope")
-			}
-			return withDatabase(ctx, std, func(db *database, _ config.Config) error {
-				if *revoke {
-					err := db.store.RevokeKey(ctx, args[0], "command line")
-					if err == nil {
-						fmt.Fprintln(std.out, "the key is revoked")
-					}
-					return err
-				}
-				if ok, err := db.store.HasTelescope(ctx, *tel); err != nil {
-					return err
-				} else if !ok {
-					return fmt.Errorf("there is no telescope %q in the live campaign", *tel)
-				}
-				token, hash := auth.NewToken()
-				if _, err := db.store.AddKey(ctx, args[0], *tel, hash, "command line"); err != nil {
-					return err
-				}
-				fmt.Fprintf(std.out, "key for %s, shown only now:\n%s\n", *tel, token)
-				return nil
-			})
-		}
-	},
-}
-
 var healthCommand = command{
 	name: "health", short: "ask a running service whether it is well",
 	long:     "Asks the service at an address whether it can answer, and ends with exit code 0 or 1: for a container's health check.",
@@ -253,13 +145,4 @@ var healthCommand = command{
 			return nil
 		}
 	},
-}
-
-// readLine reads one line, such as a password.
-func readLine(r io.Reader) (string, error) {
-	line, err := bufio.NewReader(io.LimitReader(r, 4096)).ReadString('\n')
-	if err != nil && !errors.Is(err, io.EOF) {
-		return "", fmt.Errorf("standard input: %w", err)
-	}
-	return strings.TrimRight(line, "\r\n"), nil
 }

@@ -171,7 +171,20 @@ func TestDemo(t *testing.T) {
 	if got := once(t, exitOK, "user", "Bo Example"); !strings.Contains(got, "/sign-in/") {
 		t.Errorf("user says %q", got)
 	}
+	once(t, exitUsage, "user", "Cy Example", "--role", "observer")
+	once(t, exitUsage, "user", "Cy Example", "--telescope", firstTelescope(t))
+	once(t, exitFailed, "user", "Cy Example", "--role", "observer", "--telescope", "NOWHERE")
+	once(t, exitOK, "user", "Cy Example", "--role", "observer", "--telescope", firstTelescope(t))
+	if got := once(t, exitFailed, "user", "cy example", "--role", "coordinator"); !strings.Contains(got, "Cy Example has the role observer already") {
+		t.Errorf("another role for somebody who is there: %q", got)
+	}
+	if got := once(t, exitOK, "user", "--list"); !strings.Contains(got, "Ada Example: coordinator\n") || !strings.Contains(got, "Cy Example: observer for "+firstTelescope(t)+", by link only\n") {
+		t.Errorf("the people are\n%s", got)
+	}
 	once(t, exitOK, "key", "control", "--revoke")
+	if got := once(t, exitOK, "key", "--list"); !strings.Contains(got, "control: telescope "+firstTelescope(t)+", never used, revoked 20") {
+		t.Errorf("the keys are\n%s", got)
+	}
 	first := exported(t)
 	d.end(t)
 	noPostgres(t, dir)

@@ -327,7 +327,9 @@ func (bs *blockSolver) result(bi int) []*scan {
 		list = append(list, t.scan(bi, c.place, c.rx, int(l.start), c.steps, int(l.turn), -1))
 	}
 	if best < 0 {
-		return slices.Clone(bs.must)
+		// The scans that should stand leave one another too little room: only
+		// the pins, which the campaign answers for, stay.
+		return bs.g.s.pins(bi)
 	}
 	slices.Reverse(list)
 	return list

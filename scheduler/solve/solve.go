@@ -175,12 +175,17 @@ func (r *run) repair() {
 			r.search.bs.stride = 1
 		}
 		r.search.move()
+		r.search.bs.effort += moveEffort
 		if n%10 == 9 {
 			r.report()
 		}
 	}
 	r.report()
 }
+
+// moveEffort is what every move costs besides its transitions, so that a search
+// ends even where there is nothing to weigh.
+const moveEffort = 100
 
 // coolFrom is the first temperature, as a part of the score.
 const coolFrom = 4e-4

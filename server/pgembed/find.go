@@ -1,6 +1,7 @@
 package pgembed
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"os"
@@ -9,6 +10,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"time"
 )
 
 // minMajor is the oldest Postgres that works: 14 brought multirange types and
@@ -73,8 +75,8 @@ func candidates() []string {
 			dirs = append(dirs, filepath.Dir(real))
 		}
 	}
-	if out, err := exec.Command("pg_config", "--bindir").Output(); err == nil {
-		dirs = append(dirs, strings.TrimSpace(string(out)))
+	if out, err := run("pg_config", "--bindir"); err == nil {
+		dirs = append(dirs, out)
 	}
 	for _, g := range globs {
 		m, _ := filepath.Glob(g) // the patterns are well-formed
@@ -90,17 +92,27 @@ func inspect(dir string) (binaries, error) {
 			return binaries{}, fmt.Errorf("%s holds no %s", dir, name)
 		}
 	}
-	out, err := exec.Command(filepath.Join(dir, "postgres"), "--version").Output()
+	out, err := run(filepath.Join(dir, "postgres"), "--version")
 	if err != nil {
 		return binaries{}, fmt.Errorf("%s: %w", filepath.Join(dir, "postgres"), err)
 	}
-	fields := strings.Fields(string(out))
-	for _, f := range fields {
+	for _, f := range strings.Fields(out) {
 		if n, err := strconv.Atoi(strings.SplitN(f, ".", 2)[0]); err == nil {
 			return binaries{dir, n}, nil
 		}
 	}
-	return binaries{}, fmt.Errorf("%s says its version is %q", dir, strings.TrimSpace(string(out)))
+	return binaries{}, fmt.Errorf("%s says its version is %q", dir, out)
+}
+
+// toolTimeout bounds the programs that only say something.
+const toolTimeout = 10 * time.Second
+
+// run runs a program that says one line.
+func run(name string, args ...string) (string, error) {
+	ctx, cancel := context.WithTimeout(context.Background(), toolTimeout)
+	defer cancel()
+	out, err := exec.CommandContext(ctx, name, args...).Output()
+	return strings.TrimSpace(string(out)), err
 }
 
 // clusterMajor is the version that made a data folder; 0 where there is none.

@@ -1,139 +1,85 @@
 package pgembed
 
 import (
-	"context"
 	"errors"
 	"fmt"
 	"os"
 	"os/exec"
 	"path/filepath"
-	"strconv"
 	"strings"
+	"syscall"
 	"testing"
-	"time"
-
-	"github.com/jackc/pgx/v5"
 )
 
-// holdEnv makes the test binary hold a cluster until it is killed.
-const holdEnv = "CADENCEWRIGHT_TEST_HOLD"
-
-func TestMain(m *testing.M) {
-	if dir := os.Getenv(holdEnv); dir != "" {
-		c, err := Start(context.Background(), Options{Dir: dir, Unsafe: true, Exclusive: true})
-		if err != nil {
-			fmt.Println("error:", err)
-			os.Exit(1)
-		}
-		fmt.Println("ready")
-		<-c.Done()
-		os.Exit(0)
+func TestStartStopStartAgain(t *testing.T) {
+	dir := filepath.Join(tempDir(t), "made", "by", "us")
+	c := start(t, dir)
+	if !c.Owner() || c.Dir() != dir {
+		t.Errorf("owner %v, dir %s", c.Owner(), c.Dir())
 	}
-	os.Exit(m.Run())
-}
-
-// tempDir is a folder that the account of the server can reach.
-func tempDir(t *testing.T) string {
-	t.Helper()
-	if _, err := find(os.Getenv("CADENCEWRIGHT_PG_BIN"), 0); err != nil {
-		if os.Getenv("CI") == "true" {
+	for sql, want := range map[string]string{
+		"show listen_addresses":     "",
+		"show server_encoding":      "UTF8",
+		"select current_user::text": "postgres",
+		"select datcollate::text from pg_database where datname = 'postgres'": "C",
+		"select lo_from_bytea(4711, 'kept')::text":                            "4711",
+	} {
+		if got := query(t, c, sql); got != want {
+			t.Errorf("%s: %q, want %q", sql, got, want)
+		}
+	}
+	pid := serverOf(t, dir)
+	if group, err := syscall.Getpgid(pid); err != nil || group == syscall.Getpgrp() {
+		t.Errorf("the server is in our group of processes (%d, %v): Ctrl-C would reach it", group, err)
+	}
+	for range 2 {
+		if err := c.Stop(); err != nil {
 			t.Fatal(err)
 		}
-		t.Skip(err)
 	}
-	dir, err := os.MkdirTemp("", "cwpg")
-	if err != nil {
-		t.Fatal(err)
-	}
-	if err := os.Chmod(dir, 0o755); err != nil {
-		t.Fatal(err)
-	}
-	t.Cleanup(func() { os.RemoveAll(dir) })
-	return dir
-}
-
-func start(t *testing.T, dir string) *Cluster {
-	t.Helper()
-	c, err := Start(t.Context(), Options{Dir: dir, Unsafe: true})
-	if err != nil {
-		t.Fatal(err)
-	}
-	t.Cleanup(func() {
-		if err := c.Stop(); err != nil {
-			t.Error(err)
-		}
-	})
-	return c
-}
-
-func query(t *testing.T, c *Cluster, sql string) string {
-	t.Helper()
-	conn, err := pgx.Connect(t.Context(), c.DSN("postgres"))
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer conn.Close(context.Background())
-	var s string
-	if err := conn.QueryRow(t.Context(), sql).Scan(&s); err != nil {
-		t.Fatal(err)
-	}
-	return s
-}
-
-func pidOf(t *testing.T, c *Cluster) int {
-	t.Helper()
-	lines, err := c.pidFile()
-	if err != nil {
-		t.Fatal(err)
-	}
-	pid, err := strconv.Atoi(lines[0])
-	if err != nil {
-		t.Fatal(err)
-	}
-	return pid
-}
-
-func awaitEnd(t *testing.T, pid int) {
-	t.Helper()
-	for deadline := time.Now().Add(20 * time.Second); isPostgres(pid); time.Sleep(20 * time.Millisecond) {
-		if time.Now().After(deadline) {
-			t.Fatalf("Postgres process %d is still there", pid)
-		}
-	}
-}
-
-func TestStartStopStartAgain(t *testing.T) {
-	dir := tempDir(t)
-	c := start(t, dir)
-	if got := query(t, c, "select 'here'"); got != "here" {
-		t.Errorf("got %q", got)
-	}
-	if got := query(t, c, "show listen_addresses"); got != "" {
-		t.Errorf("the server listens on %q; only the socket is wanted", got)
-	}
-	pid := pidOf(t, c)
-	if err := c.Stop(); err != nil {
-		t.Fatal(err)
-	}
-	awaitEnd(t, pid)
-	if c.Err() != nil {
-		t.Errorf("after Stop: %v", c.Err())
+	awaitEnd(t, dir, pid)
+	if err := awaitDone(t, c); err != nil {
+		t.Errorf("after Stop: %v", err)
 	}
 	again := start(t, dir)
-	if got := query(t, again, "select 'here'"); got != "here" {
-		t.Errorf("got %q", got)
+	if got := query(t, again, "select convert_from(lo_get(4711), 'UTF8')"); got != "kept" {
+		t.Errorf("what was stored came back as %q", got)
+	}
+	if _, err := os.Stat(filepath.Join(dir, logName+".old")); err != nil {
+		t.Errorf("the log of the run before is gone: %v", err)
+	}
+}
+
+// Only the socket's folder lets anybody in, and only its owner's account.
+func TestFoldersAreClosed(t *testing.T) {
+	dir := madeDir(t)
+	start(t, dir)
+	for name, want := range map[string]os.FileMode{"data": 0o700, "run": 0o700} {
+		info, err := os.Stat(filepath.Join(dir, name))
+		if err != nil {
+			t.Fatal(err)
+		}
+		if got := info.Mode().Perm(); got != want {
+			t.Errorf("%s has mode %o, want %o", name, got, want)
+		}
+	}
+	if info, err := os.Stat(filepath.Join(dir, logName)); err != nil || info.Mode().Perm() != 0o600 {
+		t.Errorf("the log: %v, %v", info.Mode(), err)
 	}
 }
 
 func TestSecondProgramAttaches(t *testing.T) {
-	dir := tempDir(t)
+	dir := madeDir(t)
 	c := start(t, dir)
 	second, err := Start(t.Context(), Options{Dir: dir})
 	if err != nil {
 		t.Fatal(err)
 	}
-	if second.Owner() {
+	if second.Owner() || second.Done() != nil {
 		t.Error("two owners")
+	}
+	if got := query(t, second, "select 'two'"); got != "two" {
+		t.Errorf("got %q", got)
 	}
 	if err := second.Stop(); err != nil {
 		t.Fatal(err)
@@ -146,158 +92,95 @@ func TestSecondProgramAttaches(t *testing.T) {
 	if !errors.As(err, &held) || held.PID != os.Getpid() || held.Dir != dir {
 		t.Errorf("an exclusive start says %v; wanted who holds %s", err, dir)
 	}
+	if !strings.Contains(err.Error(), fmt.Sprint(os.Getpid())) || !strings.Contains(err.Error(), dir) {
+		t.Errorf("the message does not say who holds what: %v", err)
+	}
 	if err := Reset(dir); !errors.As(err, &held) {
 		t.Errorf("reset of a held folder says %v", err)
 	}
 }
 
-// hold starts another process that owns the cluster.
-func hold(t *testing.T, dir string) *exec.Cmd {
-	t.Helper()
-	cmd := exec.Command(os.Args[0])
-	cmd.Env = append(os.Environ(), holdEnv+"="+dir)
-	out, err := cmd.StdoutPipe()
-	if err != nil {
-		t.Fatal(err)
-	}
-	if err := cmd.Start(); err != nil {
-		t.Fatal(err)
-	}
-	buf := make([]byte, 200)
-	n, _ := out.Read(buf)
-	if got := string(buf[:n]); got != "ready\n" {
-		t.Fatalf("the other process says %q", got)
-	}
-	return cmd
-}
-
-func TestKilledOwnerLeavesNoServer(t *testing.T) {
+// Several cold starts at once: one makes the cluster, the others attach.
+func TestColdStartsAtOnce(t *testing.T) {
+	needPostgres(t)
 	dir := tempDir(t)
-	cmd := hold(t, dir)
-	c := &Cluster{dir: dir}
-	pid := pidOf(t, c)
-	if err := cmd.Process.Kill(); err != nil {
-		t.Fatal(err)
+	owners := 0
+	var all []*program
+	for range 3 {
+		all = append(all, begin(t, "hold", dir, -1))
 	}
-	cmd.Wait()
-	awaitEnd(t, pid)
-	again := start(t, dir)
-	if got := query(t, again, "select 'back'"); got != "back" {
-		t.Errorf("got %q", got)
+	for _, p := range all {
+		switch says := p.says(t); says {
+		case "ready true":
+			owners++
+			defer fmt.Fprintln(p.in, "stop")
+		case "ready false":
+		default:
+			t.Errorf("a program says %q", says)
+		}
+	}
+	if owners != 1 {
+		t.Errorf("%d owners, want 1", owners)
 	}
 }
 
-func TestStartRightAfterTheOwnerWasKilled(t *testing.T) {
-	dir := tempDir(t)
-	cmd := hold(t, dir)
-	if err := cmd.Process.Kill(); err != nil {
+// A program that waits for the server of another takes over when that one is
+// gone.
+func TestWaitingProgramTakesOver(t *testing.T) {
+	needPostgres(t)
+	dir := madeDir(t)
+	first := &Cluster{dir: dir}
+	if err := first.takeLock(); err != nil { // and never starts a server
 		t.Fatal(err)
 	}
-	cmd.Wait()
-	c := start(t, dir) // waits for the old server to go, or adopts it
-	if got := query(t, c, "select 'back'"); got != "back" {
-		t.Errorf("got %q", got)
-	}
-}
-
-func TestKilledServerIsReported(t *testing.T) {
-	dir := tempDir(t)
-	c := start(t, dir)
-	p, err := os.FindProcess(pidOf(t, c))
-	if err != nil {
-		t.Fatal(err)
-	}
-	if err := p.Kill(); err != nil {
-		t.Fatal(err)
-	}
+	p := begin(t, "try", dir, -1)
+	said := make(chan string, 1)
+	go func() { said <- p.says(t) }()
 	select {
-	case <-c.Done():
-	case <-time.After(20 * time.Second):
-		t.Fatal("the end of the server went unnoticed")
+	case s := <-said:
+		t.Fatalf("the second program did not wait: %q", s)
+	default:
 	}
-	if c.Err() == nil {
-		t.Error("no reason for the end of the server")
-	}
-}
-
-func TestStalePidFile(t *testing.T) {
-	dir := tempDir(t)
-	c := start(t, dir)
-	if err := c.Stop(); err != nil {
-		t.Fatal(err)
-	}
-	// The number of a process that is there but is no Postgres: our own.
-	stale := fmt.Sprintf("%d\n%s/data\n1\n5432\n%s/run\n\n\nready\n", os.Getpid(), dir, dir)
-	if err := os.WriteFile(filepath.Join(dir, "data", "postmaster.pid"), []byte(stale), 0o600); err != nil {
-		t.Fatal(err)
-	}
-	again := start(t, dir)
-	if got := query(t, again, "select 'fine'"); got != "fine" {
-		t.Errorf("got %q", got)
+	first.lock.Close()
+	if s := <-said; s != "ready true" {
+		t.Errorf("the second program says %q", s)
 	}
 }
 
-func TestReset(t *testing.T) {
-	dir := tempDir(t)
-	c := start(t, dir)
-	if err := c.Stop(); err != nil {
-		t.Fatal(err)
+// Settings of the person's own Postgres must not reach the private one.
+func TestEnvironmentOfAnotherPostgres(t *testing.T) {
+	needPostgres(t)
+	for _, v := range []string{"PGDATA=/nowhere", "PGPORT=1234", "PGUSER=x", "LC_ALL=xx_YY.wrong", "LANG=xx_YY.wrong"} {
+		name, value, _ := strings.Cut(v, "=")
+		t.Setenv(name, value)
 	}
-	mine := filepath.Join(dir, "notes.txt")
-	if err := os.WriteFile(mine, []byte("keep"), 0o600); err != nil {
-		t.Fatal(err)
-	}
-	if err := Reset(dir); err != nil {
-		t.Fatal(err)
-	}
-	if _, err := os.Stat(filepath.Join(dir, "data")); !errors.Is(err, os.ErrNotExist) {
-		t.Error("the data are still there")
-	}
-	if _, err := os.Stat(mine); err != nil {
-		t.Error("reset removed a file that is not its own")
-	}
-	if err := Reset(filepath.Join(dir, "nowhere")); err != nil {
-		t.Errorf("reset of nothing: %v", err)
+	c := start(t, tempDir(t)) // made under these too
+	if got := query(t, c, "show lc_messages"); got != "C" {
+		t.Errorf("lc_messages is %q", got)
 	}
 }
 
-func TestLongPath(t *testing.T) {
-	dir := filepath.Join(tempDir(t), strings.Repeat("long", 25))
-	c := start(t, dir)
-	if got := query(t, c, "select 'short socket'"); got != "short socket" {
-		t.Errorf("got %q", got)
-	}
-	t.Cleanup(func() { os.RemoveAll(c.socket) })
-}
-
-func TestRefusals(t *testing.T) {
-	dir := tempDir(t)
-	if _, err := Start(t.Context(), Options{Dir: dir, BinDir: dir}); err == nil || !strings.Contains(err.Error(), "initdb") {
-		t.Errorf("a folder without programs: %v", err)
-	}
-	file := filepath.Join(dir, "file")
-	if err := os.WriteFile(file, nil, 0o600); err != nil {
-		t.Fatal(err)
-	}
-	if _, err := Start(t.Context(), Options{Dir: filepath.Join(file, "sub")}); err == nil || !strings.Contains(err.Error(), "data folder") {
-		t.Errorf("a folder inside a file: %v", err)
-	}
-	if os.Geteuid() == 0 {
-		hidden := filepath.Join(dir, "hidden")
-		if err := os.Mkdir(hidden, 0o700); err != nil {
-			t.Fatal(err)
-		}
-		if _, err := Start(t.Context(), Options{Dir: filepath.Join(hidden, "data")}); err == nil || !strings.Contains(err.Error(), hidden) {
-			t.Errorf("a folder that the database's user cannot reach: %v", err)
-		}
-	}
-	if err := os.MkdirAll(filepath.Join(dir, "old", "data"), 0o755); err != nil {
-		t.Fatal(err)
-	}
-	if err := os.WriteFile(filepath.Join(dir, "old", "data", "PG_VERSION"), []byte("9.6\n"), 0o600); err != nil {
-		t.Fatal(err)
-	}
-	if _, err := Start(t.Context(), Options{Dir: filepath.Join(dir, "old")}); err == nil || !strings.Contains(err.Error(), "Postgres 9") {
-		t.Errorf("a cluster of a version that is not there: %v", err)
+// Any name of a folder will do.
+func TestOddFolders(t *testing.T) {
+	for _, name := range []string{"with space", "comma,quote'double\"dollar$back`tick", "é☉", strings.Repeat("long", 25)} {
+		t.Run(name[:4], func(t *testing.T) {
+			dir := filepath.Join(tempDir(t), name)
+			if err := os.Rename(madeDir(t), dir); err != nil {
+				t.Fatal(err)
+			}
+			c := start(t, dir)
+			t.Cleanup(func() { os.RemoveAll(c.socket) })
+			if got := query(t, c, "select 'reached'"); got != "reached" {
+				t.Errorf("got %q", got)
+			}
+			psql, err := exec.LookPath("psql")
+			if err != nil {
+				t.Skip("no psql: install the Postgres client to check the command that people are shown")
+			}
+			out, err := exec.Command("/bin/sh", "-c", strings.Replace(c.Psql("postgres"), "psql", psql, 1)+" -XAtc 'select 4711'").CombinedOutput()
+			if err != nil || strings.TrimSpace(string(out)) != "4711" {
+				t.Errorf("%s: %v %s", c.Psql("postgres"), err, out)
+			}
+		})
 	}
 }

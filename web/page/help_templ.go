@@ -132,7 +132,7 @@ func help(v view.Help) templ.Component {
 				var templ_7745c5c3_Var7 string
 				templ_7745c5c3_Var7, templ_7745c5c3_Err = templ.JoinStringErrs("curl -H \"Authorization: Bearer $KEY\" " + v.BaseURL + "/api/v1/telescopes/CODE/now")
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `page/help.templ`, Line: 44, Col: 115}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `web/page/help.templ`, Line: 44, Col: 115}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var7))
 				if templ_7745c5c3_Err != nil {
@@ -145,7 +145,7 @@ func help(v view.Help) templ.Component {
 				var templ_7745c5c3_Var8 string
 				templ_7745c5c3_Var8, templ_7745c5c3_Err = templ.JoinStringErrs("curl -X POST -H \"Authorization: Bearer $KEY\" -H \"Idempotency-Key: $UNIQUE\" \\\n  -H \"Content-Type: application/json\" \\\n  -d '{\"state\": \"done\", \"snr\": 84.2}' " + v.BaseURL + "/api/v1/scans/ID/outcome")
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `page/help.templ`, Line: 46, Col: 244}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `web/page/help.templ`, Line: 46, Col: 244}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var8))
 				if templ_7745c5c3_Err != nil {

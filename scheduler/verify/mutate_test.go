@@ -60,7 +60,7 @@ func TestEachCorruptionIsFound(t *testing.T) {
 
 // A plan without any corruption must pass, or the test above proves nothing.
 func TestGoodPlanIsGood(t *testing.T) {
-	for _, name := range []string{"tiny", "small-1", "small-2", "medium-1", "medium-2", "hard-1"} {
+	for _, name := range []string{"tiny", "small-1", "small-2", "medium-1", "medium-2", "hard-1", "large-1"} {
 		t.Run(name, func(t *testing.T) {
 			t.Parallel()
 			c := tiny(t)

@@ -1,7 +1,7 @@
 -- +goose Up
 
 -- Somebody who can sign in: by password, or without one by link only.
--- telescopes are those that an observer may report for; empty: all.
+-- telescopes are those that an observer may report for; empty: none.
 create table person (
     id            bigint generated always as identity primary key,
     name          text not null constraint person_name_filled check (name <> ''),

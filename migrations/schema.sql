@@ -396,7 +396,7 @@ create index history_by_time on history (campaign_id, starts_at);
 create index history_of_source on history (source_id, starts_at);
 
 -- Somebody who can sign in: by password, or without one by link only.
--- telescopes are those that an observer may report for; empty: all.
+-- telescopes are those that an observer may report for; empty: none.
 create table person (
     id            bigint generated always as identity primary key,
     name          text not null constraint person_name_filled check (name <> ''),

@@ -12,7 +12,7 @@ type Person struct {
 	ID           int64
 	Name         string
 	Role         string   // coordinator, observer or reader
-	Telescopes   []string // an observer's; empty: all
+	Telescopes   []string // an observer's; empty: none
 	PasswordHash *string  // nil: by link only
 	Disabled     bool
 	Version      int64

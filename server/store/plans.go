@@ -116,16 +116,21 @@ func (t *tx) addPlan(ctx context.Context, campaign int64, p *scheduler.Plan, met
 	return id, t.addScans(ctx, campaign, id, names, p.Scans)
 }
 
-// addScans writes the scans of a plan.
+// addScans writes the scans of a plan. What they refer to is found before the
+// first is sent: an error in the middle would reach the caller as the
+// database's.
 func (t *tx) addScans(ctx context.Context, campaign, plan int64, of *names, scans []scheduler.Scan) error {
+	refs := make([]scanRefs, len(scans))
+	for i := range scans {
+		var err error
+		if refs[i], err = of.scan(i, &scans[i]); err != nil {
+			return err
+		}
+	}
 	columns := []string{"campaign_id", "plan_id", "telescope_id", "block_id", "source_id", "receiver_id", "ephemeris_id",
 		"block_code", "source_name", "receiver", "span", "minutes", "motor_az_deg", "pinned", "toa_us", "earns"}
 	_, err := t.q.CopyFrom(ctx, pgx.Identifier{"scan"}, columns, pgx.CopyFromSlice(len(scans), func(i int) ([]any, error) {
-		x := &scans[i]
-		id, err := of.scan(i, x)
-		if err != nil {
-			return nil, err
-		}
+		x, id := &scans[i], refs[i]
 		return []any{campaign, plan, id.telescope, id.block, id.source, id.receiver, id.ephemeris,
 			x.Block, x.Source, x.Receiver, spanOf(x.Start, x.End()), x.Minutes, x.MotorAzDeg, x.Pinned, x.TOAUs, earningDocs(x.Earns)}, nil
 	}))

@@ -3,7 +3,6 @@ package store_test
 import (
 	"context"
 	"errors"
-	"os"
 	"sync"
 	"testing"
 	"time"
@@ -13,59 +12,11 @@ import (
 	"cadencewright/scheduler/solve"
 	"cadencewright/server/store"
 	"cadencewright/server/store/storetest"
-	"cadencewright/testdata"
 )
 
 func TestMain(m *testing.M) {
 	store.SetDSN(storetest.DSN, storetest.SchemaDSN)
 	storetest.Run(m)
-}
-
-func campaign(t testing.TB, name string) *scheduler.Campaign {
-	t.Helper()
-	data, err := os.ReadFile(testdata.Path("campaigns", name+".json"))
-	if err != nil {
-		t.Fatal(err)
-	}
-	c, err := scheduler.ReadCampaign(data)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return c
-}
-
-// What goes in comes out: the same meaning, the same canonical bytes.
-func TestCampaignComesBack(t *testing.T) {
-	s := storetest.Open(t, nil)
-	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1", "large-1", "every-field", "demo"} {
-		c := campaign(t, name)
-		id, err := s.ImportCampaign(t.Context(), c, "tester")
-		if err != nil {
-			t.Fatalf("%s: %v", name, err)
-		}
-		back, ref, err := s.LoadCampaign(t.Context(), id)
-		if err != nil {
-			t.Fatalf("%s: %v", name, err)
-		}
-		if ref.Live != (name == "small-1") {
-			t.Errorf("%s: live is %v; the first campaign is the live one", name, ref.Live)
-		}
-		want, err := scheduler.WriteCampaign(c)
-		if err != nil {
-			t.Fatal(err)
-		}
-		got, err := scheduler.WriteCampaign(back)
-		if err != nil {
-			t.Fatalf("%s: %v", name, err)
-		}
-		if string(got) != string(want) {
-			os.WriteFile(t.ArtifactDir()+"/got.json", got, 0o600)
-			t.Errorf("%s: the exported campaign is not the imported one", name)
-		}
-	}
-	if _, err := s.ImportCampaign(t.Context(), campaign(t, "small-1"), "tester"); !errors.Is(err, scheduler.ErrConflict) {
-		t.Errorf("the same name again: %v", err)
-	}
 }
 
 // planned is a store with small-1 live, and two plans of it as drafts.

@@ -264,7 +264,7 @@ func (w *world) plan(c *client, week string) int64 {
 	if err := json.Unmarshal(b, &job); err != nil {
 		w.t.Fatal(err)
 	}
-	for deadline := time.Now().Add(60 * time.Second); ; time.Sleep(50 * time.Millisecond) {
+	for deadline := time.Now().Add(3 * time.Minute); ; time.Sleep(50 * time.Millisecond) {
 		c.get("/api/v1/jobs/"+itoa(job.ID), &job)
 		switch job.State {
 		case "done":

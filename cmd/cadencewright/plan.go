@@ -35,7 +35,7 @@ the search and keeps the best plan found so far; a second one ends the program.`
 		q := &planQuestion{}
 		q.horizon.declare(flags)
 		flags.StringVar(&q.out, "out", "-", "`FILE` to write the plan to; - is standard output")
-		flags.Int64Var(&q.effort, "effort", 0, fmt.Sprintf("how much to search, in thousands of `STEPS`; %d if left out", solve.DefaultEffort))
+		flags.Int64Var(&q.effort, "effort", 0, "how much to search, in thousands of changes `TRIED`; if left out, what suits the number of units")
 		flags.Float64Var(&q.seconds, "seconds", 0, "stop the search after so many `SECONDS`, and search until then if --effort is left out")
 		flags.Uint64Var(&q.seed, "seed", 0, "`NUMBER` that the search's random choices start from")
 		flags.IntVar(&q.workers, "workers", runtime.GOMAXPROCS(0), "how many `CORES` may share the work; it does not change the plan")
@@ -62,7 +62,7 @@ const endlessEffort = 1 << 40
 func (q *planQuestion) check() error {
 	switch {
 	case q.effort < 0 || q.effort > endlessEffort:
-		return usagef("--effort is %d; allowed is 1 to %d, in thousands of steps", q.effort, int64(endlessEffort))
+		return usagef("--effort is %d; allowed is 1 to %d, in thousands of changes tried", q.effort, int64(endlessEffort))
 	case !(q.seconds >= 0 && q.seconds <= 7*86400):
 		return usagef("--seconds is %g; allowed is up to a week, 604800", q.seconds)
 	case q.workers < 1 || q.workers > 1024:

@@ -173,3 +173,13 @@ func (l *Length) Allowed(step int) bool {
 	}
 	return false
 }
+
+// Allows tells whether a scan of a number of steps may start at a step.
+func (p *Place) Allows(steps, start int) bool {
+	for i := range p.Lengths {
+		if p.Lengths[i].Steps == steps {
+			return p.Lengths[i].Allowed(start)
+		}
+	}
+	return false
+}

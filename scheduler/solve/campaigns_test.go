@@ -42,7 +42,7 @@ var campaigns = []struct {
 func TestCampaigns(t *testing.T) {
 	for _, c := range campaigns {
 		t.Run(c.name, func(t *testing.T) {
-			r, err := solve.Solve(problem(t, c.name), solve.Options{Seed: 1, Effort: 2500, Workers: 2})
+			r, err := solve.Solve(problem(t, c.name), solve.Options{Seed: 1, Effort: 600, Workers: 2})
 			if err != nil {
 				t.Fatal(err)
 			}
@@ -64,7 +64,7 @@ func TestCampaigns(t *testing.T) {
 func TestSamePlanAgain(t *testing.T) {
 	var first []byte
 	for i, workers := range []int{1, 2, 1, 2} {
-		r, err := solve.Solve(problem(t, "medium-2"), solve.Options{Seed: 7, Effort: 400, Workers: workers})
+		r, err := solve.Solve(problem(t, "medium-2"), solve.Options{Seed: 7, Effort: 60, Workers: workers})
 		if err != nil {
 			t.Fatal(err)
 		}

@@ -45,8 +45,12 @@ func (r *row) at(start int) float64 {
 // worth at most, as section 6 of the planning model defines it.
 type table struct {
 	p       *feasible.Problem
+	goals   []*goal  // by index of the goal; nil: without units
+	flat    []int    // by telescope: its first receiver among all
 	lengths []int    // distinct, in steps, ascending
 	cells   [][]cell // by block
+
+	thrift []float64 // by steps of a scan and the least gap after it: how much it is favoured in draws
 
 	clockFrom int // minutes of instant 0 of the clock that all blocks share
 	clockLen  int
@@ -70,17 +74,29 @@ type beginKey struct {
 
 func newTable(p *feasible.Problem) *table {
 	t := &table{p: p, cells: make([][]cell, len(p.Blocks)), cover: map[coverKey][]bool{}, begin: map[beginKey][]bool{}}
+	n := 0
+	for i := range p.Campaign.Telescopes {
+		t.flat = append(t.flat, n)
+		n += len(p.Campaign.Telescopes[i].Receivers)
+	}
+	t.goals = newGoals(t)
 	for bi := range p.Blocks {
 		t.listCells(bi)
 	}
 	t.indexLengths()
 	t.makeClock()
+	t.thrift = make([]float64, 2)
+	for bi := range p.Blocks {
+		for n := len(t.thrift); n <= p.Blocks[bi].Steps+p.Blocks[bi].MinGap; n++ {
+			t.thrift = append(t.thrift, 1/math.Sqrt(float64(n)))
+		}
+	}
 	for bi := range p.Blocks {
 		t.markPartners(bi)
 	}
 	for bi := range p.Blocks {
 		for ci := range t.cells[bi] {
-			t.fill(bi, &t.cells[bi][ci])
+			t.fillRows(bi, &t.cells[bi][ci])
 		}
 		t.cells[bi] = slices.DeleteFunc(t.cells[bi], func(c cell) bool { return len(c.rows) == 0 })
 	}

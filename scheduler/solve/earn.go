@@ -1,300 +1,337 @@
 package solve
 
 import (
-	"math"
 	"slices"
 
 	"cadencewright/scheduler"
 	"cadencewright/scheduler/units"
 )
 
-// scan is a scan under consideration, with all that earning needs.
-type scan struct {
-	block, place int
-	rx           int // position in Block.Receivers
-	start, steps int // on the block's grid
-	turn         int // whole turns added to the unwrapped azimuth
-	pin          int // into Block.Pins, or -1
-
-	source, tel, receiver int // indices into the campaign
-	startMin, endMin      float64
-	info                  float64
-}
-
 // event is something that can earn from one due window of a goal: a scan, or
 // scans together. It counts at an instant and takes part with its members.
 type event struct {
 	at      float64
 	quality float64
-	members [2]*scan // of overlaps by more than two the rest is in more
-	more    []*scan
+	a, b    *scan
+	more    []*scan // of overlaps by more than two, the rest
 }
 
 func (e *event) each(f func(*scan)) {
-	for _, m := range e.members {
-		if m != nil {
-			f(m)
-		}
+	f(e.a)
+	if e.b != nil {
+		f(e.b)
 	}
 	for _, m := range e.more {
 		f(m)
 	}
 }
 
-// taken says which event earns from a unit; orbit for phase windows.
+// taken says which event earns from a unit, and how much.
 type taken struct {
 	unit  int
 	event event
 	value float64
 }
 
-// earner works out what scans of one source earn from its goals, at best.
-// It is exact: for due windows a dynamic programme over windows and events, for
+// earner works out what the scans of one source earn from a goal at best. It
+// is exact: for due windows a dynamic programme over windows and events, for
 // phase windows a matching of scans to orbits.
 type earner struct {
-	set    *units.Set
 	events []event
-	f      [][]float64
-	back   [][][2]int
+	best   [][]float64 // by window, then event: of all windows and events up to there
+	prev   []int       // by event: the last event that leaves half an interval
+	match  [][2]int
+	tried  []int
 }
 
-// goal is the most that a goal can earn from the scans of its source, sorted
-// by start. With list, the events that earn it are appended to it.
-func (e *earner) goal(gi int, scans []*scan, list *[]taken) float64 {
-	g := &e.set.Goals[gi]
-	if len(g.Units) == 0 {
+// value is the most that a goal can earn from the scans of its source, sorted
+// by start.
+func (e *earner) value(g *goal, scans []*scan) float64 {
+	if len(scans) == 0 {
 		return 0
 	}
-	if g.Kind == scheduler.KindPhase {
+	if g.kind == scheduler.KindPhase {
 		total := 0.0
-		for _, ui := range g.Units {
-			total += e.phase(ui, scans, list)
+		for i := range g.units {
+			total += g.units[i].Value * float64(e.phase(g, &g.units[i], scans))
 		}
 		return total
 	}
-	e.events = e.events[:0]
+	if len(g.units) == 1 {
+		return e.single(g, scans)
+	}
 	e.find(g, scans)
 	if len(e.events) == 0 {
 		return 0
 	}
-	if len(g.Units) == 1 {
-		return e.single(g.Units[0], list)
-	}
-	return e.windows(g, list)
+	return e.windows(g, nil)
 }
 
-// single is the best event for a goal with one window.
-func (e *earner) single(ui int, list *[]taken) float64 {
-	u := &e.set.Units[ui]
-	best, which := 0.0, -1
-	for i := range e.events {
-		if v := u.Weight * u.Timeliness(e.events[i].at) * e.events[i].quality; v > best {
-			best, which = v, i
+// list appends to list the events that earn the goal's value.
+func (e *earner) list(g *goal, scans []*scan, list []taken) []taken {
+	if g.kind == scheduler.KindPhase {
+		for i := range g.units {
+			e.phase(g, &g.units[i], scans)
+			for _, m := range e.match {
+				x := scans[m[1]]
+				list = append(list, taken{g.first + i, event{at: x.startMin, quality: 1, a: x}, g.units[i].Value})
+			}
 		}
+		return list
 	}
-	if which >= 0 && list != nil {
-		*list = append(*list, taken{ui, e.events[which], best})
+	if e.find(g, scans); len(e.events) > 0 {
+		e.windows(g, &list)
 	}
-	return best
+	return list
 }
 
-// find lists the goal's events.
-func (e *earner) find(g *units.Goal, scans []*scan) {
-	switch g.Kind {
+// single is value for a goal with one due window.
+func (e *earner) single(g *goal, scans []*scan) float64 {
+	u := &g.units[0]
+	best := 0.0
+	switch g.kind {
 	case scheduler.KindCadence:
-		for _, s := range scans {
-			if e.bands(g, s) != 0 {
-				if q := units.Quality(s.info, g.TOAUs); q > 0 {
-					e.events = append(e.events, event{at: s.startMin, quality: q, members: [2]*scan{s}})
-				}
+		for _, x := range scans {
+			if g.of(x) != 0 {
+				best = max(best, u.Timeliness(x.startMin)*g.quality(x))
 			}
 		}
 	case scheduler.KindOverlap:
-		for _, s := range scans {
-			e.overlaps(g, scans, s)
+		for _, x := range scans {
+			if v := u.Timeliness(x.startMin); v > best && e.overlaps(g, scans, x, nil) {
+				best = v
+			}
 		}
 	case scheduler.KindBandPair:
-		e.pairs(g, scans)
+		for i, x := range scans {
+			if v := u.Timeliness(x.startMin); v > best && e.paired(g, scans, i) {
+				best = v
+			}
+		}
 	}
+	return u.Weight * best
 }
 
-// bands are what a scan can give to a goal; nothing where it detects nothing.
-func (e *earner) bands(g *units.Goal, s *scan) units.BandSet {
-	if s.info <= 0 {
-		return 0
+// paired tells whether scan i is the later start of a pair, or all of one.
+func (e *earner) paired(g *goal, scans []*scan, i int) bool {
+	x := scans[i]
+	mine := g.of(x)
+	if mine == 0 || mine == g.wants {
+		return mine != 0
 	}
-	return e.set.Bands(g, s.tel, s.receiver)
+	for j := i - 1; j >= 0; j-- {
+		if x.startMin-scans[j].startMin > g.within {
+			return false
+		}
+		if mine|g.of(scans[j]) == g.wants {
+			return true
+		}
+	}
+	return false
 }
 
-// overlaps adds the events whose common time begins with scan s.
-func (e *earner) overlaps(g *units.Goal, scans []*scan, s *scan) {
-	if s.endMin-s.startMin < g.OverlapMin-units.MS {
-		return
+// overlaps tells whether a common time begins with scan x; with out, its
+// members are noted there.
+func (e *earner) overlaps(g *goal, scans []*scan, x *scan, out *event) bool {
+	if x.endMin-x.startMin < g.overlap {
+		return false
 	}
-	for bands := e.bands(g, s); bands != 0; bands &= bands - 1 {
+	for bands := g.of(x); bands != 0; bands &= bands - 1 {
 		bit := bands & -bands
-		ev := event{at: s.startMin, quality: 1, members: [2]*scan{s}}
 		n := 1
+		var seen [8]int // telescopes; more are looked for in out
+		seen[0] = x.tel
+		ev := event{at: x.startMin, quality: 1, a: x}
 		for _, o := range scans {
-			if o.tel == s.tel || o.startMin > s.startMin || o.endMin < s.startMin+g.OverlapMin-units.MS || e.bands(g, o)&bit == 0 {
+			if o.startMin > x.startMin {
+				break
+			}
+			if o.tel == x.tel || o.endMin-x.startMin < g.overlap || g.of(o)&bit == 0 || slices.Contains(seen[:min(n, len(seen))], o.tel) {
 				continue
 			}
-			if n > 1 && hasTelescope(&ev, o.tel) {
+			if n < len(seen) {
+				seen[n] = o.tel
+			} else if ev.has(o.tel) {
 				continue
 			}
 			if n == 1 {
-				ev.members[1] = o
+				ev.b = o
 			} else {
 				ev.more = append(ev.more, o)
 			}
-			if n++; n == g.Count {
+			if n++; n == g.count {
+				if out != nil {
+					*out = ev
+				}
+				return true
+			}
+		}
+	}
+	return false
+}
+
+// has tells whether one of the event's scans is on a telescope.
+func (e *event) has(tel int) bool {
+	found := false
+	e.each(func(x *scan) { found = found || x.tel == tel })
+	return found
+}
+
+// find lists the goal's events by instant.
+func (e *earner) find(g *goal, scans []*scan) {
+	e.events = e.events[:0]
+	for i, x := range scans {
+		switch g.kind {
+		case scheduler.KindCadence:
+			if q := g.quality(x); q > 0 && g.of(x) != 0 {
+				e.events = append(e.events, event{at: x.startMin, quality: q, a: x})
+			}
+		case scheduler.KindOverlap:
+			var ev event
+			if e.overlaps(g, scans, x, &ev) {
 				e.events = append(e.events, ev)
+			}
+		case scheduler.KindBandPair:
+			e.pairs(g, scans, i)
+		}
+	}
+}
+
+// pairs adds the events of a pair goal that count at scan i.
+func (e *earner) pairs(g *goal, scans []*scan, i int) {
+	x := scans[i]
+	mine := g.of(x)
+	if mine == 0 {
+		return
+	}
+	if mine == g.wants {
+		e.events = append(e.events, event{at: x.startMin, quality: 1, a: x})
+		return
+	}
+	for j := i - 1; j >= 0 && x.startMin-scans[j].startMin <= g.within; j-- {
+		if mine|g.of(scans[j]) == g.wants {
+			e.events = append(e.events, event{at: x.startMin, quality: 1, a: x, b: scans[j]})
+			if !g.entangled {
 				return
 			}
 		}
 	}
 }
 
-func hasTelescope(ev *event, tel int) bool {
-	found := false
-	ev.each(func(s *scan) { found = found || s.tel == tel })
-	return found
+// windows serves the windows of a goal in order, the events of two windows at
+// least half an interval apart.
+func (e *earner) windows(g *goal, list *[]taken) float64 {
+	if g.entangled && len(g.units) > 1 {
+		return e.chains(g, list)
+	}
+	n, m := len(g.units), len(e.events)
+	e.grow(n, m)
+	for i, p := 0, -1; i < m; i++ {
+		for p+1 < i && e.events[i].at-e.events[p+1].at >= g.every/2-units.MS/2 {
+			p++
+		}
+		e.prev[i] = p
+	}
+	for w := range n {
+		u := &g.units[w]
+		for i := range m {
+			top := 0.0
+			if w > 0 {
+				top = e.best[w-1][i]
+			}
+			if i > 0 {
+				top = max(top, e.best[w][i-1])
+			}
+			if v := u.Weight * u.Timeliness(e.events[i].at) * e.events[i].quality; v > 0 {
+				if p := e.prev[i]; w > 0 && p >= 0 {
+					v += e.best[w-1][p]
+				}
+				top = max(top, v)
+			}
+			e.best[w][i] = top
+		}
+	}
+	total := e.best[n-1][m-1]
+	for w, i := n-1, m-1; list != nil && w >= 0 && i >= 0; {
+		switch here := e.best[w][i]; {
+		case here == 0:
+			return total
+		case w > 0 && e.best[w-1][i] == here:
+			w--
+		case i > 0 && e.best[w][i-1] == here:
+			i--
+		default:
+			u, ev := &g.units[w], e.events[i]
+			*list = append(*list, taken{g.first + w, ev, u.Weight * u.Timeliness(ev.at) * ev.quality})
+			w, i = w-1, e.prev[i]
+		}
+	}
+	return total
 }
 
-// pairs adds the events of a band-pair goal; each counts at its later start.
-func (e *earner) pairs(g *units.Goal, scans []*scan) {
-	for i, s := range scans {
-		mine := e.bands(g, s)
-		if mine == 0 {
-			continue
+func (e *earner) grow(n, m int) {
+	for len(e.best) < n {
+		e.best = append(e.best, nil)
+	}
+	for w := range n {
+		if len(e.best[w]) < m {
+			e.best[w] = make([]float64, 2*m)
 		}
-		if mine == g.Wants() {
-			e.events = append(e.events, event{at: s.startMin, quality: 1, members: [2]*scan{s}})
-			continue
-		}
-		for _, o := range scans[:i] {
-			if s.startMin-o.startMin <= g.WithinMin+units.MS && mine|e.bands(g, o) == g.Wants() {
-				e.events = append(e.events, event{at: s.startMin, quality: 1, members: [2]*scan{s, o}})
-			}
-		}
+	}
+	if len(e.prev) < m {
+		e.prev = make([]int, 2*m)
 	}
 }
 
-// windows serves the windows of a goal in order: the events of two windows are
-// at least half an interval apart and have no scan in common.
-func (e *earner) windows(g *units.Goal, list *[]taken) float64 {
-	slices.SortStableFunc(e.events, func(a, b event) int {
-		switch {
-		case a.at < b.at:
-			return -1
-		case a.at > b.at:
-			return 1
-		}
-		return 0
-	})
-	n, m := len(g.Units), len(e.events)
-	e.grow(n, m)
-	best, bw, be := 0.0, -1, -1
-	for w := range n {
-		u := &e.set.Units[g.Units[w]]
-		for i := range m {
-			e.f[w][i], e.back[w][i] = math.Inf(-1), [2]int{-1, -1}
+// link is a sequence of windows served, for chains.
+type link struct {
+	value      float64
+	window, ev int
+	back       int // into the links before, or -1
+}
+
+// chains is windows for goals whose events may have scans in common. Of two
+// sequences that end alike only the better is followed.
+func (e *earner) chains(g *goal, list *[]taken) float64 {
+	var links []link
+	best := -1
+	for w := range g.units {
+		u := &g.units[w]
+		for i := range e.events {
 			v := u.Weight * u.Timeliness(e.events[i].at) * e.events[i].quality
 			if v <= 0 {
 				continue
 			}
-			top := 0.0
-			for pw := range w {
-				for pi := 0; pi < i; pi++ {
-					if e.f[pw][pi] > top && e.apart(pi, i, u.Every) {
-						top, e.back[w][i] = e.f[pw][pi], [2]int{pw, pi}
-					}
+			top, back := 0.0, -1
+			for li := range links {
+				if l := &links[li]; l.window < w && l.value > top && e.follows(links, li, i, g.every) {
+					top, back = l.value, li
 				}
 			}
-			e.f[w][i] = v + top
-			if e.f[w][i] > best {
-				best, bw, be = e.f[w][i], w, i
+			links = append(links, link{v + top, w, i, back})
+			if best < 0 || links[len(links)-1].value > links[best].value {
+				best = len(links) - 1
 			}
 		}
 	}
-	for list != nil && bw >= 0 {
-		u := &e.set.Units[g.Units[bw]]
-		ev := e.events[be]
-		*list = append(*list, taken{g.Units[bw], ev, u.Weight * u.Timeliness(ev.at) * ev.quality})
-		bw, be = e.back[bw][be][0], e.back[bw][be][1]
+	if best < 0 {
+		return 0
 	}
-	return best
+	for li := best; list != nil && li >= 0; li = links[li].back {
+		u, ev := &g.units[links[li].window], e.events[links[li].ev]
+		*list = append(*list, taken{g.first + links[li].window, ev, u.Weight * u.Timeliness(ev.at) * ev.quality})
+	}
+	return links[best].value
 }
 
-// apart tells whether event i may serve a window after event p.
-func (e *earner) apart(p, i int, every float64) bool {
-	a, b := &e.events[p], &e.events[i]
-	if b.at-a.at < every/2-units.MS/2 {
+// follows tells whether event i may serve a window after a sequence.
+func (e *earner) follows(links []link, li, i int, every float64) bool {
+	if e.events[i].at-e.events[links[li].ev].at < every/2-units.MS/2 {
 		return false
 	}
 	shared := false
-	a.each(func(x *scan) { b.each(func(y *scan) { shared = shared || x == y }) })
+	for ; li >= 0; li = links[li].back {
+		e.events[links[li].ev].each(func(x *scan) { e.events[i].each(func(y *scan) { shared = shared || x == y }) })
+	}
 	return !shared
-}
-
-func (e *earner) grow(n, m int) {
-	for len(e.f) < n {
-		e.f, e.back = append(e.f, nil), append(e.back, nil)
-	}
-	for w := range n {
-		if len(e.f[w]) < m {
-			e.f[w], e.back[w] = make([]float64, m), make([][2]int, m)
-		}
-	}
-}
-
-// phase matches scans to passages that no other scan has, as many as the unit
-// can be earned.
-func (e *earner) phase(ui int, scans []*scan, list *[]taken) float64 {
-	u := &e.set.Units[ui]
-	g := &e.set.Goals[u.Goal]
-	var match [][2]int // passage, scan
-	for si, s := range scans {
-		if len(match) == u.N {
-			break
-		}
-		if e.bands(g, s) == 0 {
-			continue
-		}
-		e.augment(u, g, scans, si, &match, nil)
-	}
-	if list != nil {
-		for _, m := range match {
-			*list = append(*list, taken{ui, event{at: scans[m[1]].startMin, members: [2]*scan{scans[m[1]]}}, u.Value})
-		}
-	}
-	return u.Value * float64(len(match))
-}
-
-// augment finds a passage for a scan, moving others to different ones where
-// that makes room.
-func (e *earner) augment(u *units.Unit, g *units.Goal, scans []*scan, si int, match *[][2]int, tried []int) bool {
-	s := scans[si]
-	lo, _ := slices.BinarySearchFunc(u.Passages, s.startMin, func(p units.Passage, t float64) int {
-		if p.Leave < t {
-			return -1
-		}
-		return 1
-	})
-	for pi := lo; pi < len(u.Passages) && u.Passages[pi].Enter < s.endMin; pi++ {
-		if !u.Passages[pi].Covers(s.startMin, s.endMin, g.DwellMin) || slices.Contains(tried, pi) {
-			continue
-		}
-		tried = append(tried, pi)
-		at := slices.IndexFunc(*match, func(m [2]int) bool { return m[0] == pi })
-		if at < 0 {
-			*match = append(*match, [2]int{pi, si})
-			return true
-		}
-		if e.augment(u, g, scans, (*match)[at][1], match, tried) {
-			(*match)[at][1] = si
-			return true
-		}
-	}
-	return false
 }

@@ -59,8 +59,10 @@ func (s *state) earnings(p *scheduler.Plan) (map[*scan][]scheduler.Earning, []in
 	var list []taken
 	for gi := range set.Goals {
 		g := &set.Goals[gi]
-		list = list[:0]
-		s.earn.goal(gi, s.source[g.Source], &list)
+		if s.goals[gi] == nil {
+			continue
+		}
+		list = s.earn.list(s.goals[gi], s.source[g.Source], list[:0])
 		slices.SortStableFunc(list, func(a, b taken) int { return a.unit - b.unit })
 		for _, t := range list {
 			n := 0

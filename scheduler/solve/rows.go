@@ -10,7 +10,7 @@ import (
 
 // fill works out the rows of a cell: for each unit of its source, the most
 // that a scan can be worth to it at each start.
-func (t *table) fill(bi int, c *cell) {
+func (t *table) fillRows(bi int, c *cell) {
 	b, set := &t.p.Blocks[bi], t.p.Units
 	for _, ui := range set.BySource[c.source] {
 		u := &set.Units[ui]

@@ -34,8 +34,9 @@ func (t *tx) tell(ctx context.Context, c Change) error {
 	return err
 }
 
-// A listener that hears nothing asks whether the connection still stands: one
-// that died without a word would be silent for ever.
+// A listener that hears nothing for a while asks whether the connection still
+// stands, and how long it waits for the answer: a connection that died without
+// a word would be silent for ever.
 const (
 	feedSilence = 20 * time.Second
 	feedAnswer  = 5 * time.Second
@@ -78,7 +79,7 @@ func (s *Store) listen(ctx context.Context, f func(Change)) error {
 	}
 	f(Change{})
 	for {
-		c, err := hear(ctx, conn)
+		c, err := s.hear(ctx, conn)
 		if err != nil {
 			return err
 		}
@@ -90,8 +91,8 @@ func (s *Store) listen(ctx context.Context, f func(Change)) error {
 
 // hear waits for the next change; nil if there was none for a while and the
 // connection stands.
-func hear(ctx context.Context, conn *pgx.Conn) (*Change, error) {
-	quiet, cancel := context.WithTimeout(ctx, feedSilence)
+func (s *Store) hear(ctx context.Context, conn *pgx.Conn) (*Change, error) {
+	quiet, cancel := context.WithTimeout(ctx, s.feedSilence)
 	defer cancel()
 	n, err := conn.WaitForNotification(quiet)
 	if err != nil {

@@ -193,3 +193,6 @@ func wantField(t testing.TB, what string, err, kind error, field string) {
 
 // notQueued is for jobs that no worker is to take.
 func notQueued(context.Context, pgx.Tx, int64) error { return nil }
+
+// named are the arguments of a query by name.
+func named(args map[string]any) pgx.NamedArgs { return args }

@@ -18,8 +18,9 @@ import (
 
 // Store is the database. It may be used from several goroutines.
 type Store struct {
-	pool  *pgxpool.Pool
-	clock func() time.Time
+	pool        *pgxpool.Pool
+	clock       func() time.Time
+	feedSilence time.Duration
 }
 
 // Options say how to open the store.
@@ -55,7 +56,7 @@ func Open(ctx context.Context, dsn string, o Options) (*Store, error) {
 	if err != nil {
 		return nil, fault("connect", err)
 	}
-	s := &Store{pool: pool, clock: o.Clock}
+	s := &Store{pool: pool, clock: o.Clock, feedSilence: feedSilence}
 	if s.clock == nil {
 		s.clock = time.Now
 	}

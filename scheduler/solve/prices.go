@@ -47,9 +47,6 @@ func newPricing(d *dual) *pricing {
 	return p
 }
 
-// Of what the planes foretell, a step must bring this part to count.
-const serious = 0.1
-
 // Columns that have not been wanted for so many steps are forgotten.
 const maxIdle = 25
 

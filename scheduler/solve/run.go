@@ -23,8 +23,7 @@ type run struct {
 	stopped atomic.Bool
 
 	mu    sync.Mutex // guards what follows
-	top   float64    // the best total so far, and its score
-	score float64
+	top   float64    // the best total so far
 	best  []scan
 	bound float64
 	told  Progress

@@ -87,16 +87,6 @@ func newState(t *table) *state {
 	return s
 }
 
-// score is what the plan earns, summed anew in order of the goals so that it
-// does not depend on how the plan came about.
-func (s *state) score() float64 {
-	total := 0.0
-	for _, v := range s.earned {
-		total += v
-	}
-	return total
-}
-
 // total is what the search maximises: the score, bonuses for scans that stay,
 // and a small cost of telescope time.
 func (s *state) total() float64 {
@@ -158,12 +148,6 @@ func (s *state) move(x *scan, start int) {
 	s.touch(x.source)
 	s.log = append(s.log, change{op: moved, x: x, start: x.start, turn: x.turn})
 	s.retime(x, start, x.turn)
-}
-
-// turn gives a scan another turn of the azimuth drive.
-func (s *state) turn(x *scan, turn int) {
-	s.log = append(s.log, change{op: moved, x: x, start: x.start, turn: x.turn})
-	s.t.orient(x, turn)
 }
 
 func (s *state) retime(x *scan, start, turn int) {

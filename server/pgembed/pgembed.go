@@ -151,7 +151,8 @@ func (c *Cluster) takeLock() error {
 		pid, _ := strconv.Atoi(strings.TrimSpace(string(b)))
 		return &HeldError{Dir: c.dir, PID: pid}
 	}
-	if err := f.Truncate(0); err == nil {
+	err = f.Truncate(0)
+	if err == nil {
 		_, err = f.WriteAt([]byte(strconv.Itoa(os.Getpid())+"\n"), 0)
 	}
 	if err != nil {

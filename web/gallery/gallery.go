@@ -69,7 +69,9 @@ func Handler() http.Handler {
 	mux := http.NewServeMux()
 	mux.Handle(static.Prefix, static.Handler())
 	mux.HandleFunc("GET /weeks/"+week+"/job", func(w http.ResponseWriter, _ *http.Request) {
-		page.JobFragment(w, planningWeek().Job)
+		if err := page.JobFragment(w, planningWeek().Job); err != nil {
+			http.Error(w, err.Error(), http.StatusInternalServerError)
+		}
 	})
 	index := bytes.NewBufferString("<!DOCTYPE html><html lang=en><title>Gallery</title><ul>")
 	for _, s := range Sheets() {

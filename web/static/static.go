@@ -104,7 +104,7 @@ func compress(b []byte) []byte {
 	if err != nil {
 		panic(err)
 	}
-	w.Write(b) // a bytes.Buffer takes everything
+	_, _ = w.Write(b) // a bytes.Buffer takes everything
 	w.Close()
 	if buf.Len() >= len(b) {
 		return nil

@@ -22,6 +22,9 @@ func TestCandidatesAgainstListing(t *testing.T) {
 		{"motor range with a hole", func(c *scheduler.Campaign) { c.Telescopes[0].AzimuthRangeDeg = [2]float64{130, 250} }},
 		{"hour angle through 12 h", func(c *scheduler.Campaign) {
 			c.Telescopes[1].HourAngleRangeH, c.Telescopes[1].LatitudeDeg, c.Telescopes[1].ElevationMinDeg = [2]float64{-12, 12}, 72, 2
+			for _, i := range []int{1, 4} { // when the sources are below the pole
+				c.Blocks[i].Start, c.Blocks[i].End, c.Blocks[i].Lost = c.Blocks[i].Start.Add(9*time.Hour), c.Blocks[i].End.Add(9*time.Hour), nil
+			}
 		}},
 		{"lost parts", func(c *scheduler.Campaign) {
 			for i := range c.Blocks {

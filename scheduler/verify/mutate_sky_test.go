@@ -101,6 +101,12 @@ var skyCorruptions = slices.Concat(
 		*s.MotorAzDeg += by / math.Cos(most(t, c, s, elevation)*math.Pi/180)
 	}),
 	[]corruption{
+		{name: "hour angle through 12 h", change: func(t testing.TB, c *scheduler.Campaign, p *scheduler.Plan) {
+			s := onlyScanIn(t, c, p, "e1")
+			c.Telescopes[1].HourAngleRangeH, c.Telescopes[1].LatitudeDeg = [2]float64{-12, 12}, 75
+			c.Blocks[1].Start, c.Blocks[1].End, c.Blocks[1].Lost = after(11), after(14), nil
+			s.Source, s.Start, s.Minutes, s.Earns = c.Sources[2].Name, after(12), 20, nil
+		}, want: []Kind{KindHourAngle}},
 		{name: "motor azimuth missing", change: func(t testing.TB, c *scheduler.Campaign, p *scheduler.Plan) {
 			onlyScanIn(t, c, p, "a1").MotorAzDeg = nil
 		}, want: []Kind{KindMotorAz}},

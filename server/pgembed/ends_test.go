@@ -10,6 +10,8 @@ import (
 	"syscall"
 	"testing"
 	"time"
+
+	"github.com/jackc/pgx/v5"
 )
 
 func TestKilledOwnerLeavesNoServer(t *testing.T) {
@@ -53,6 +55,45 @@ func TestKilledServerIsReported(t *testing.T) {
 	}
 	again := start2(t, c)
 	if got := query(t, again, "select 'recovered'"); got != "recovered" {
+		t.Errorf("got %q", got)
+	}
+}
+
+// A part of a killed server that is still at work is waited for: a server beside
+// it would destroy the cluster.
+func TestBusyPartOfAKilledServerIsWaitedFor(t *testing.T) {
+	dir := madeDir(t)
+	c := start(t, dir)
+	conn, err := pgx.Connect(t.Context(), c.DSN("postgres"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer conn.Close(context.Background())
+	var pid int
+	if err := conn.QueryRow(t.Context(), "select pg_backend_pid()").Scan(&pid); err != nil {
+		t.Fatal(err)
+	}
+	worked := make(chan error, 1)
+	go func() { // no statement of SQL looks up from this one
+		_, err := conn.Exec(context.Background(), "select sum(sqrt(n)) from generate_series(1, 6000000) n")
+		worked <- err
+	}()
+	for query(t, c, fmt.Sprintf("select state from pg_stat_activity where pid = %d", pid)) != "active" {
+		time.Sleep(time.Millisecond)
+	}
+	if err := syscall.Kill(serverOf(t, dir), syscall.SIGKILL); err != nil {
+		t.Fatal(err)
+	}
+	if err := awaitDone(t, c); err == nil {
+		t.Error("no reason for the end of the server")
+	}
+	again := start2(t, c)
+	// A dead process that nobody has buried yet has no command line.
+	if line, err := os.ReadFile(fmt.Sprintf("/proc/%d/cmdline", pid)); err == nil && len(line) > 0 {
+		t.Errorf("the new server runs beside a part of the old one: %q", line)
+	}
+	<-worked
+	if got := query(t, again, "select 'whole'"); got != "whole" {
 		t.Errorf("got %q", got)
 	}
 }
@@ -154,13 +195,21 @@ func TestStalePidFile(t *testing.T) {
 		t.Fatal(err)
 	}
 	c := start(t, dir)
+	acct, err := accountFor(filepath.Join(dir, "data"))
+	if err != nil {
+		t.Fatal(err)
+	}
 	for name, pid := range map[string]string{"us": fmt.Sprint(os.Getpid()), "another server": fmt.Sprint(serverOf(t, otherDir)),
 		"nobody": fmt.Sprint(ended.Process.Pid), "no number": "", "init": "1"} {
 		if err := c.Stop(); err != nil {
 			t.Fatal(err)
 		}
 		stale := fmt.Sprintf("%s\n%s/data\n1\n5432\n%s/run\n\n\nready\n", pid, dir, dir)
-		if err := os.WriteFile(filepath.Join(dir, "data", "postmaster.pid"), []byte(stale), 0o600); err != nil {
+		file := filepath.Join(dir, "data", "postmaster.pid")
+		if err := os.WriteFile(file, []byte(stale), 0o600); err != nil {
+			t.Fatal(err)
+		}
+		if err := acct.give(file); err != nil {
 			t.Fatal(err)
 		}
 		c = start(t, dir)
@@ -177,19 +226,19 @@ func TestStalePidFile(t *testing.T) {
 func TestServerOutOfSightIsLeftAlone(t *testing.T) {
 	dir := madeDir(t)
 	c := start(t, dir)
-	if got := c.runs(serverOf(t, dir)); got != yes {
+	if got := c.process(serverOf(t, dir)); got != server {
 		t.Errorf("our own server is %d", got)
 	}
-	if got := runsByPS(serverOf(t, dir), filepath.Join(dir, "data")); got != yes {
+	if got := processByPS(serverOf(t, dir), filepath.Join(dir, "data")); got != server {
 		t.Errorf("our own server by ps is %d", got)
 	}
-	if got := runsByPS(serverOf(t, dir), "/another/data"); got != unknown {
+	if got := processByPS(serverOf(t, dir), "/another/data"); got != unknown {
 		t.Errorf("a server of who knows whom is %d, want unknown", got)
 	}
-	if got := runsByPS(os.Getpid(), filepath.Join(dir, "data")); got != no {
+	if got := processByPS(os.Getpid(), filepath.Join(dir, "data")); got != other {
 		t.Errorf("this test is %d", got)
 	}
-	if got := runsByPS(1<<22+1, filepath.Join(dir, "data")); got != no {
+	if got := processByPS(1<<22+1, filepath.Join(dir, "data")); got != gone {
 		t.Errorf("a process that cannot be is %d", got)
 	}
 }

@@ -26,7 +26,7 @@ func TestMain(m *testing.M) {
 	role, dir, _ := strings.Cut(os.Getenv(roleEnv), " ")
 	switch role {
 	case "hold", "try":
-		os.Exit(other(role, dir))
+		os.Exit(playRole(role, dir))
 	}
 	code := m.Run()
 	if dir, err := madeOnce(); err == nil {
@@ -35,8 +35,8 @@ func TestMain(m *testing.M) {
 	os.Exit(code)
 }
 
-// other is the test binary as another program.
-func other(role, dir string) int {
+// playRole is the test binary as another program.
+func playRole(role, dir string) int {
 	c, err := Start(context.Background(), Options{Dir: dir, Unsafe: true, BinDir: os.Getenv("CADENCEWRIGHT_PG_BIN")})
 	if err != nil {
 		fmt.Println("error:", err)
@@ -179,7 +179,7 @@ func serverOf(t *testing.T, dir string) int {
 func awaitEnd(t *testing.T, dir string, pid int) {
 	t.Helper()
 	c := &Cluster{dir: dir}
-	for deadline := time.Now().Add(20 * time.Second); c.runs(pid) != no; time.Sleep(20 * time.Millisecond) {
+	for deadline := time.Now().Add(20 * time.Second); c.process(pid) == server; time.Sleep(20 * time.Millisecond) {
 		if time.Now().After(deadline) {
 			t.Fatalf("Postgres process %d is still there", pid)
 		}

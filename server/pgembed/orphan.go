@@ -15,23 +15,25 @@ import (
 	"time"
 )
 
-// answer is a question's answer, which may be out of reach.
-type answer int
+// process is what is known of a process whose number the server's file names.
+type process int
 
 const (
-	no answer = iota
-	yes
-	unknown
+	gone    process = iota // there is none of that number
+	other                  // it is not the server of this folder
+	server                 // it is
+	unknown                // out of sight
 )
 
 // dyingTime is how long a server whose owner has died gets to stop by itself.
 const dyingTime = 2 * time.Second
 
 // orphan looks for what a killed run left behind: a server of this folder that
-// still runs and answers is returned to be adopted; the pid file of one that is
-// gone is removed, for its number may be somebody else's by now. The file is
-// left alone where it is not certain that its server is gone: two servers on
-// one cluster destroy it.
+// still runs and answers is returned to be adopted. The pid file of one that is
+// gone is Postgres's own business, for by it a new server finds out whether
+// parts of the old one still run; it is removed only where its number is
+// somebody else's by now, which Postgres would take for a running server. Where
+// that is not certain nothing is done: two servers on one cluster destroy it.
 func (c *Cluster) orphan(ctx context.Context) (pid int, err error) {
 	for start := time.Now(); ; {
 		lines, err := c.pidFile()
@@ -42,9 +44,11 @@ func (c *Cluster) orphan(ctx context.Context) (pid int, err error) {
 			return 0, folderError(c.dir, err)
 		}
 		pid, _ := strconv.Atoi(strings.TrimSpace(lines[0]))
-		runs := c.runs(pid)
+		is := c.process(pid)
 		switch waited := time.Since(start); {
-		case runs == no:
+		case is == gone:
+			return 0, nil
+		case is == other:
 			return 0, c.removePidFile()
 		case waited > dyingTime && c.answers():
 			return pid, nil
@@ -87,48 +91,51 @@ func (c *Cluster) endOrphan() error {
 	}
 }
 
-// runs tells whether a process is the server of this data folder.
-func (c *Cluster) runs(pid int) answer {
-	if pid <= 0 || errors.Is(syscall.Kill(pid, 0), syscall.ESRCH) {
-		return no
+// process tells whether a process is the server of this data folder.
+func (c *Cluster) process(pid int) process {
+	if pid <= 0 { // a file that was cut short; Postgres would not start over it
+		return other
+	}
+	if errors.Is(syscall.Kill(pid, 0), syscall.ESRCH) {
+		return gone
 	}
 	data := filepath.Join(c.dir, "data")
 	if _, err := os.Stat("/proc/self/cmdline"); err != nil {
-		return runsByPS(pid, data)
+		return processByPS(pid, data)
 	}
 	proc := filepath.Join("/proc", strconv.Itoa(pid))
 	if at, err := os.Readlink(filepath.Join(proc, "cwd")); err == nil { // a server lives in its cluster
 		if real, err := filepath.EvalSymlinks(data); err == nil && at == real {
-			return yes
+			return server
 		}
 	}
 	line, err := os.ReadFile(filepath.Join(proc, "cmdline"))
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
-		return no // it has just ended
+		return gone // it has just ended
 	case err != nil:
 		return unknown
 	case len(line) == 0:
-		return no // a dead process that nobody has buried, or the kernel's own
+		return other // a dead process that nobody has buried, or the kernel's own
 	case bytes.Contains(line, []byte(data+"\x00")):
-		return yes
+		return server
 	}
-	return no
+	return other
 }
 
-// runsByPS is runs where there is no /proc.
-func runsByPS(pid int, data string) answer {
+// processByPS is process where there is no /proc.
+func processByPS(pid int, data string) process {
 	ctx, cancel := context.WithTimeout(context.Background(), toolTimeout)
 	defer cancel()
 	out, err := exec.CommandContext(ctx, "ps", "-p", strconv.Itoa(pid), "-o", "command=").Output()
 	line := string(out)
 	switch {
 	case err != nil && strings.TrimSpace(line) == "":
-		return no // ps finds none
+		return gone // ps finds none
 	case strings.Contains(line, data):
-		return yes
+		return server
 	case strings.Contains(line, "postgres"):
 		return unknown
 	}
-	return no
+	return other
 }

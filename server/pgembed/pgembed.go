@@ -194,10 +194,11 @@ func (c *Cluster) own(ctx context.Context, o Options, acct account) error {
 	}
 	if pid != 0 {
 		c.adopt(pid)
-	} else if err := c.launch(bin, acct, o.Unsafe); err != nil {
-		return err
+		err = c.awaitReady(ctx, startTimeout)
+	} else {
+		err = c.begin(ctx, bin, acct, o.Unsafe)
 	}
-	if err := c.awaitReady(ctx, startTimeout); err != nil {
+	if err != nil {
 		return errors.Join(err, c.Stop())
 	}
 	return nil

@@ -79,6 +79,26 @@ func (c *Cluster) watchFor(wait func() error) {
 	}()
 }
 
+// begin starts the server and waits until it is ready. Parts of a server that
+// was killed may outlive it for a moment, and a new one refuses to start beside
+// them: then it is tried again.
+func (c *Cluster) begin(ctx context.Context, bin binaries, acct account, unsafe bool) error {
+	for start := time.Now(); ; {
+		if err := c.launch(bin, acct, unsafe); err != nil {
+			return err
+		}
+		err := c.awaitReady(ctx, startTimeout)
+		if err == nil || !strings.Contains(c.logEnd(), "pre-existing shared memory block") || time.Since(start) > stopTimeout {
+			return err
+		}
+		select {
+		case <-ctx.Done():
+			return ctx.Err()
+		case <-time.After(200 * time.Millisecond):
+		}
+	}
+}
+
 // adopt takes over a server that a killed run has left behind.
 func (c *Cluster) adopt(pid int) {
 	c.end = func() error {
@@ -88,7 +108,7 @@ func (c *Cluster) adopt(pid int) {
 		return nil // it has just ended by itself
 	}
 	c.watchFor(func() error {
-		for c.runs(pid) == yes {
+		for c.process(pid) == server {
 			time.Sleep(200 * time.Millisecond)
 		}
 		return nil

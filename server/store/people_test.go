@@ -193,63 +193,6 @@ func TestPlanJobs(t *testing.T) {
 	}
 }
 
-// Changes reach a listener on another connection, also after its connection
-// was lost.
-func TestFeed(t *testing.T) {
-	s, _, plans := planned(t, nil)
-	ctx, cancel := context.WithCancel(t.Context())
-	defer cancel()
-	got := make(chan store.Change, 100)
-	go s.Listen(ctx, func(c store.Change) { got <- c })
-	await := func(what, kind string) {
-		t.Helper()
-		for {
-			select {
-			case c := <-got:
-				if c.Kind == kind {
-					return
-				}
-			case <-time.After(15 * time.Second):
-				t.Fatalf("%s: no change of kind %q", what, kind)
-			}
-		}
-	}
-	await("at the start", "")
-	if _, err := s.Issue(ctx, plans[0].ID, plans[0].Version, "ada"); err != nil {
-		t.Fatal(err)
-	}
-	await("after an issue", "issued")
-	if _, err := s.Pool().Exec(ctx, "select pg_terminate_backend(pid) from pg_stat_activity where datname = current_database() and query ilike 'listen%'"); err != nil {
-		t.Fatal(err)
-	}
-	await("after a lost connection", "")
-	if _, err := s.Issue(ctx, plans[1].ID, plans[1].Version+1, "ada"); err != nil {
-		t.Fatal(err)
-	}
-	await("after another issue", "issued")
-}
-
-// A database that is away is told apart from every other fault.
-func TestDatabaseAway(t *testing.T) {
-	s, err := store.Open(t.Context(), "host=/nowhere/at/all user=x dbname=x", store.Options{})
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer s.Close()
-	if err := s.Ping(t.Context()); !errors.Is(err, scheduler.ErrUnavailable) {
-		t.Errorf("ping: %v", err)
-	}
-	if _, err := s.LiveCampaign(t.Context()); !errors.Is(err, scheduler.ErrUnavailable) {
-		t.Errorf("live campaign: %v", err)
-	}
-	if _, err := s.ImportCampaign(t.Context(), campaign(t, "small-1"), "x"); !errors.Is(err, scheduler.ErrUnavailable) {
-		t.Errorf("import: %v", err)
-	}
-	if _, err := store.Open(t.Context(), "postgres://user:secret@[bad", store.Options{}); err == nil || len(err.Error()) == 0 {
-		t.Error("a connection string that is none opens")
-	}
-}
-
 // A transaction that is cut off in its middle leaves nothing behind.
 func TestCutOffImportLeavesNothing(t *testing.T) {
 	s := storetest.Open(t, nil)
@@ -269,18 +212,5 @@ func TestCutOffImportLeavesNothing(t *testing.T) {
 	lines, lerr := s.Journal(t.Context(), 0, 0, 10)
 	if lerr != nil || len(lines) != len(list) {
 		t.Errorf("%d lines in the journal for %d campaigns (%v)", len(lines), len(list), lerr)
-	}
-}
-
-func TestMigrateTwiceAtOnce(t *testing.T) {
-	s := storetest.Open(t, nil)
-	errs := make(chan error, 3)
-	for range 3 {
-		go func() { _, err := s.Migrate(context.Background()); errs <- err }()
-	}
-	for range 3 {
-		if err := <-errs; err != nil {
-			t.Error(err)
-		}
 	}
 }

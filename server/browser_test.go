@@ -66,7 +66,8 @@ func TestWeekInABrowser(t *testing.T) {
 		t.Fatal(err)
 	}
 	ctx := browser(t)
-	do(t, ctx, "sign in", chromedp.Navigate(w.http.URL+"/sign-in/"+token), chromedp.Click(chromedp.CSS("main form button")), chromedp.WaitVisible(chromedp.CSS("h1")))
+	do(t, ctx, "sign in", chromedp.Navigate(w.http.URL+"/sign-in/"+token), chromedp.Click(chromedp.CSS("main form button")),
+		chromedp.WaitVisible(chromedp.CSS("form[action='/sign-out']"))) // else the next navigation aborts the sign-in
 	do(t, ctx, "open the week", chromedp.Navigate(w.http.URL+"/"), chromedp.WaitVisible(chromedp.CSS("form[action$='/plan'] button")))
 	if got := text(t, ctx, "main h1"); !strings.Contains(got, "2027-W03") {
 		t.Errorf("the page is headed %q", got)

@@ -119,6 +119,7 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 // solve searches until the effort or the time is spent or the context ends.
 func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campaign, h scheduler.Horizon) (*feasible.Problem, *solve.Result, error) {
 	// Time runs from here: reading the sky is part of it.
+	started := time.Now()
 	if q.seconds > 0 {
 		var cancel context.CancelFunc
 		ctx, cancel = context.WithTimeout(ctx, time.Duration(q.seconds*float64(time.Second)))
@@ -141,9 +142,18 @@ func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campai
 	result, err := solve.Solve(problem, solve.Options{
 		Seed: q.seed, Effort: effort, Workers: q.workers,
 		Stop:     func() bool { return ctx.Err() != nil },
+		Pace:     pace(started, q.seconds),
 		Progress: func(p solve.Progress) { line.show(p.Effort, p.Score, known(p.Bound)) },
 	})
 	return problem, result, err
+}
+
+// pace is which part of some seconds is over; nil where they have no limit.
+func pace(started time.Time, seconds float64) func() float64 {
+	if seconds <= 0 {
+		return nil
+	}
+	return func() float64 { return time.Since(started).Seconds() / seconds }
 }
 
 // known is the bound, or 0 where there is none yet.

@@ -41,7 +41,7 @@ func newRun(p *feasible.Problem, o Options) *run {
 type stage struct {
 	from   int     // how many plans go on
 	chains int     // from each
-	part   float64 // of the effort, each chain
+	part   float64 // of the effort, all chains together
 	hot    float64 // first temperature, in units of scale
 	cold   float64 // last one
 }
@@ -51,9 +51,9 @@ type stage struct {
 // the best.
 var stages = []stage{
 	{1, 1, 0.03, 0.15, 0.02},
-	{0, 4, 0.10, 0.40, 0.02},
-	{2, 2, 0.08, 0.20, 0.02},
-	{1, 2, 0.09, 0.12, 0.02},
+	{0, 4, 0.40, 0.40, 0.02},
+	{2, 2, 0.32, 0.20, 0.02},
+	{1, 2, 0.18, 0.12, 0.02},
 	{1, 1, 0.07, 0.02, 0.001},
 }
 
@@ -97,6 +97,7 @@ func (r *run) search() {
 func (r *run) stage(si int, st stage, from, had []found) []found {
 	n := len(from) * st.chains
 	chains := make([]*annealer, n)
+	waves := r.waves(si, n)
 	next := make(chan int)
 	var wg sync.WaitGroup
 	for range min(r.o.Workers, n) {
@@ -105,7 +106,7 @@ func (r *run) stage(si int, st stage, from, had []found) []found {
 				s := newState(r.t)
 				s.resume(from[i/st.chains].scans)
 				chains[i] = newAnnealer(s, r.menus, mix(r.o.Seed, uint64(si*64+i)))
-				r.anneal(chains[i], st)
+				r.anneal(chains[i], st, n, waves[i/min(r.o.Workers, n)])
 			}
 		})
 	}
@@ -138,15 +139,38 @@ type found struct {
 	scans []scan
 }
 
-// anneal cools a chain down over its part of the effort.
-func (r *run) anneal(a *annealer, st stage) {
-	n := int64(st.part * float64(r.o.Effort) * 1000)
+// waves are, for a stage of n chains of which each worker takes one at a time,
+// the parts of the time allowed by which each round of workers is to be done.
+func (r *run) waves(si, n int) []float64 {
+	before := 0.0
+	for _, st := range stages[:si] {
+		before += st.part
+	}
+	list := make([]float64, (n-1)/min(r.o.Workers, n)+1)
+	for i := range list {
+		list[i] = before + stages[si].part*float64(i+1)/float64(len(list))
+	}
+	return list
+}
+
+// anneal cools one of a stage's n chains down over its part of the effort, or
+// until a part of the time allowed is over.
+func (r *run) anneal(a *annealer, st stage, chains int, until float64) {
+	n := int64(st.part * float64(r.o.Effort) * 1000 / float64(chains))
 	scale := r.t.scale()
+	since := r.pace()
 	for i := int64(0); i < n; i += batch {
 		if r.stop() && r.tries() >= least {
 			break
 		}
-		a.temp = scale * st.hot * math.Pow(st.cold/st.hot, float64(i)/float64(n))
+		done := float64(i) / float64(n)
+		if p := r.pace(); p > 0 {
+			if p >= until && r.tries() >= least {
+				break
+			}
+			done = min(1, max(done, (p-since)/(until-since)))
+		}
+		a.temp = scale * st.hot * math.Pow(st.cold/st.hot, done)
 		for range min(batch, n-i) {
 			a.try()
 		}
@@ -163,8 +187,16 @@ const batch = 512
 
 func (r *run) tries() int64 { return r.done.Load() }
 
+// pace is which part of the time allowed is over; 0 without a limit.
+func (r *run) pace() float64 {
+	if r.o.Pace == nil {
+		return 0
+	}
+	return r.o.Pace()
+}
+
 func (r *run) stop() bool {
-	if !r.stopped.Load() && r.o.Stop != nil && r.o.Stop() {
+	if !r.stopped.Load() && (r.o.Stop != nil && r.o.Stop() || r.pace() >= 1) {
 		r.stopped.Store(true)
 	}
 	return r.stopped.Load()

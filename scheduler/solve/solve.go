@@ -28,6 +28,10 @@ type Options struct {
 	// soon after it says true. A plan stopped in time depends on the clock of
 	// who stops it.
 	Stop func() bool
+	// Pace, if set, says which part of the time allowed is over; the search
+	// cools down by it where the effort is not spent sooner, and ends at 1. It
+	// is asked as Stop is, and the plan then depends on the clock likewise.
+	Pace func() float64
 	// Progress, if set, is told of better plans and bounds, by one goroutine at
 	// a time.
 	Progress func(Progress)

@@ -24,7 +24,6 @@ type run struct {
 
 	mu    sync.Mutex // guards what follows
 	top   float64    // the best total so far
-	best  []scan
 	bound float64
 	told  Progress
 }
@@ -57,8 +56,10 @@ var stages = []stage{
 	{1, 1, 0.07, 0.02, 0.001},
 }
 
-// search runs all stages, and the pricing beside them.
-func (r *run) search() {
+// search runs all stages, and the pricing beside them, and returns the scans of
+// the best plan. Of several equally good ones the stages' ranking picks one, not
+// which worker came first.
+func (r *run) search() []scan {
 	first := newAnnealer(newState(r.t), r.menus, r.o.Seed)
 	r.offer(first)
 	if r.o.Workers > 1 {
@@ -90,6 +91,7 @@ func (r *run) search() {
 		r.lower()
 	}
 	r.report()
+	return pool[0].scans
 }
 
 // stage anneals from each of some plans and returns the plans found and those
@@ -218,15 +220,11 @@ func (r *run) lower() {
 	}
 }
 
-// offer takes a chain's best plan if it is the best of all. Which of two equal
-// ones comes first does not matter to the stages; they rank by their own.
+// offer takes note of a chain's best total.
 func (r *run) offer(a *annealer) {
 	r.mu.Lock()
 	better := a.top > r.top
-	if better {
-		r.top = a.top
-		r.best = append(r.best[:0], a.kept...)
-	}
+	r.top = max(r.top, a.top)
 	r.mu.Unlock()
 	if better {
 		r.report()

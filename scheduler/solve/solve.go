@@ -78,7 +78,7 @@ func Solve(p *feasible.Problem, o Options) (*Result, error) {
 	}
 	o.Workers = max(1, o.Workers)
 	r := newRun(p, o)
-	r.search()
+	best := r.search()
 	status := EffortSpent
 	switch {
 	case r.stop():
@@ -87,7 +87,7 @@ func Solve(p *feasible.Problem, o Options) (*Result, error) {
 		status = Proven
 	}
 	s := newState(r.t)
-	s.resume(r.best)
+	s.resume(best)
 	return &Result{Plan: s.plan(r.prices.best, r.prices.bound), Status: status, Effort: r.tries() / 1000}, nil
 }
 

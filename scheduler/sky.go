@@ -1,6 +1,8 @@
 package scheduler
 
 import (
+	"fmt"
+
 	"cadencewright/astro"
 	"cadencewright/astro/orbit"
 	"cadencewright/astro/sensitivity"
@@ -39,14 +41,18 @@ func (r *Receiver) FrontEnd() sensitivity.Receiver {
 		TatmK: r.TatmK, GainKPerJy: r.GainKPerJy, Digitisation: r.Digitisation}
 }
 
-// Elements are the orbit's elements. Those of a valid campaign are valid.
+// Elements are the orbit's elements. Those of a valid campaign are valid; the
+// error names an unknown model or an element out of range.
 func (b *Binary) Elements() (orbit.Elements, error) {
-	if b.Model == BinaryELL1 {
+	switch b.Model {
+	case BinaryKepler:
+		return orbit.Kepler(orbit.KeplerParams{PbD: b.PbD, A1Ls: b.A1Ls, Ecc: b.Ecc, OmDeg: b.OmDeg, T0MJD: b.T0MJD,
+			OmdotDegYr: b.OmdotDegYr, Pbdot: b.Pbdot, M2Msun: b.M2Msun, Sini: b.Sini})
+	case BinaryELL1:
 		return orbit.ELL1(orbit.ELL1Params{PbD: b.PbD, A1Ls: b.A1Ls, TascMJD: b.TascMJD, Eps1: b.Eps1, Eps2: b.Eps2,
 			Pbdot: b.Pbdot, M2Msun: b.M2Msun, Sini: b.Sini})
 	}
-	return orbit.Kepler(orbit.KeplerParams{PbD: b.PbD, A1Ls: b.A1Ls, Ecc: b.Ecc, OmDeg: b.OmDeg, T0MJD: b.T0MJD,
-		OmdotDegYr: b.OmdotDegYr, Pbdot: b.Pbdot, M2Msun: b.M2Msun, Sini: b.Sini})
+	return orbit.Elements{}, fmt.Errorf("binary model %q: must be kepler or ell1", b.Model)
 }
 
 // Point is the orbit's reference point that the name stands for; periastron

@@ -2,6 +2,7 @@ package scheduler
 
 import (
 	"math"
+	"strings"
 	"testing"
 
 	"cadencewright/astro/orbit"
@@ -29,6 +30,13 @@ func TestElementsOfTheBinaryTable(t *testing.T) {
 		} else if e.Ecc != b.Ecc || e.T0MJD != b.T0MJD || e.OmdotDegYr != b.OmdotDegYr || math.Abs(e.Om.Deg()-b.OmDeg) > 1e-12 {
 			t.Errorf("%s: got %+v", r, e)
 		}
+	}
+}
+
+func TestUnknownBinaryModel(t *testing.T) {
+	b := Binary{Model: "bt", PbD: 2, A1Ls: 1, T0MJD: 60000}
+	if _, err := b.Elements(); err == nil || !strings.Contains(err.Error(), `"bt"`) {
+		t.Errorf("model bt: %v", err)
 	}
 }
 

@@ -134,13 +134,40 @@ func TestStoppedCheck(t *testing.T) {
 		out.Len() > 0 || !strings.Contains(errs.String(), "stopped before the end") {
 		t.Errorf("exit code %d, standard output %q, standard error %q", code, out.String(), errs.String())
 	}
-	// A plan, unlike a check, keeps what it has.
-	again := filepath.Join(dir, "again.json")
-	errs.Reset()
-	if code := run(ctx, []string{"plan", campaign, "--out", again}, strings.NewReader(""), &out, &errs); code != exitOK {
-		t.Fatalf("exit code %d: %s", code, errs.String())
+}
+
+// TestStoppedBeforeTheSearch ends a plan before the sky has been read, by
+// Ctrl-C and by time: one line that says so, exit code 1, no file, and a file
+// that was there stays as it was.
+func TestStoppedBeforeTheSearch(t *testing.T) {
+	campaign := testdata.Path("campaigns", "medium-1.json")
+	dir := t.TempDir()
+	old := filepath.Join(dir, "old.json")
+	if err := os.WriteFile(old, []byte("as it was"), 0o600); err != nil {
+		t.Fatal(err)
 	}
-	if code, stdout, _ := tryRun("", "check", "--no-bound", campaign, again); code != exitOK {
-		t.Errorf("the plan that was kept: %s", stdout)
+	gone, cancel := context.WithCancel(context.Background())
+	cancel()
+	for _, c := range []struct {
+		name string
+		ctx  context.Context
+		args []string
+		says string
+	}{
+		{"Ctrl-C", gone, nil, "interrupted before a search could begin"},
+		{"no time", context.Background(), []string{"--seconds", "1e-9"}, "the 1e-09 s of --seconds were over before a search could begin"},
+	} {
+		for _, file := range []string{filepath.Join(dir, "new.json"), old, "-"} {
+			var out, errs bytes.Buffer
+			code := run(c.ctx, append([]string{"plan", campaign, "--out", file}, c.args...), strings.NewReader(""), &out, &errs)
+			if code != exitFailed || out.Len() > 0 || !strings.Contains(errs.String(), c.says) || !strings.Contains(errs.String(), "nothing was written") ||
+				strings.Count(errs.String(), "\n") != 1 {
+				t.Errorf("%s: exit code %d, standard output %q, standard error %q", c.name, code, out.String(), errs.String())
+			}
+		}
+	}
+	onlyFile(t, dir, "old.json")
+	if b, err := os.ReadFile(old); err != nil || string(b) != "as it was" {
+		t.Errorf("the file that was there: %q, %v", b, err)
 	}
 }

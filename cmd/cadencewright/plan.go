@@ -25,7 +25,9 @@ which source is observed when, where and for how long, what that earns, what
 stays unmet, and a certificate of how good any plan could be. The file appears
 whole or not at all. The same campaign, seed and effort give the same plan, to
 the byte; with --seconds the clock decides how far the search goes. Ctrl-C ends
-the search and keeps the best plan found so far; a second one ends the program.`,
+the search and keeps the best plan found so far; a second one ends the program.
+Where the time is over or Ctrl-C comes before a search could begin, there is no
+plan to keep: that is said, nothing is written, and the exit code is 1.`,
 	examples: []string{
 		"cadencewright plan campaign.json --week 2027-W03 --out plan.json",
 		"cadencewright plan campaign.json --from 2027-01-18 --to 2027-02-01 --seconds 60 --out plan.json",
@@ -88,14 +90,24 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 	if err != nil {
 		return err
 	}
+	// Time runs from here: reading the sky is part of it.
+	started := time.Now()
+	if q.seconds > 0 {
+		var cancel context.CancelFunc
+		ctx, cancel = context.WithTimeout(ctx, time.Duration(q.seconds*float64(time.Second)))
+		defer cancel()
+	}
+	problem, err := q.prepare(ctx, c, h)
+	if err != nil {
+		return err
+	}
 	// Before the search, so that a folder that cannot be written to costs none.
 	out, err := openOutput(std, q.out)
 	if err != nil {
 		return err
 	}
 	defer out.discard()
-	started := time.Now()
-	problem, result, err := q.solve(ctx, std, c, h)
+	result, err := q.search(ctx, std, problem, started)
 	if err != nil {
 		return err
 	}
@@ -116,19 +128,23 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 	return nil
 }
 
-// solve searches until the effort or the time is spent or the context ends.
-func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campaign, h scheduler.Horizon) (*feasible.Problem, *solve.Result, error) {
-	// Time runs from here: reading the sky is part of it.
-	started := time.Now()
-	if q.seconds > 0 {
-		var cancel context.CancelFunc
-		ctx, cancel = context.WithTimeout(ctx, time.Duration(q.seconds*float64(time.Second)))
-		defer cancel()
+// prepare reads the sky for the blocks of a horizon. A context that ends
+// before that is done is a failure: without the sky there is not even an empty
+// plan whose bound could be told.
+func (q *planQuestion) prepare(ctx context.Context, c *scheduler.Campaign, h scheduler.Horizon) (*feasible.Problem, error) {
+	problem, err := feasible.BuildUntil(c, h, func() bool { return ctx.Err() != nil })
+	switch {
+	case !errors.Is(err, feasible.ErrStopped):
+		return problem, err
+	case errors.Is(ctx.Err(), context.DeadlineExceeded):
+		return nil, fmt.Errorf("the %g s of --seconds were over before a search could begin; there is no plan and nothing was written: allow more time", q.seconds)
 	}
-	problem, err := feasible.Build(c, h)
-	if err != nil {
-		return nil, nil, err
-	}
+	return nil, errors.New("interrupted before a search could begin; there is no plan and nothing was written")
+}
+
+// search looks for a plan until the effort or the time is spent or the context
+// ends; started is when the time began to count.
+func (q *planQuestion) search(ctx context.Context, std stdio, problem *feasible.Problem, started time.Time) (*solve.Result, error) {
 	line := &progressLine{now: time.Now}
 	if !q.quiet {
 		line = newProgressLine(std.err)
@@ -139,13 +155,12 @@ func (q *planQuestion) solve(ctx context.Context, std stdio, c *scheduler.Campai
 	if effort == 0 && q.seconds > 0 {
 		effort = endlessEffort
 	}
-	result, err := solve.Solve(problem, solve.Options{
+	return solve.Solve(problem, solve.Options{
 		Seed: q.seed, Effort: effort, Workers: q.workers,
 		Stop:     func() bool { return ctx.Err() != nil },
 		Pace:     pace(started, q.seconds),
 		Progress: func(p solve.Progress) { line.show(p.Effort, p.Score, known(p.Bound)) },
 	})
-	return problem, result, err
 }
 
 // pace is which part of some seconds is over; nil where they have no limit.

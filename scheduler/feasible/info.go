@@ -6,7 +6,6 @@ import (
 
 	"cadencewright/astro/sensitivity"
 	"cadencewright/scheduler"
-	"cadencewright/scheduler/units"
 )
 
 // radio is a receiver looking at a source.
@@ -61,11 +60,7 @@ func (b *builder) serves(tel, rx, src int) bool {
 
 // Radiometer is a receiver looking at a source.
 func Radiometer(s *scheduler.Source, r *scheduler.Receiver) sensitivity.Radiometer {
-	return sensitivity.NewRadiometer(
-		sensitivity.Pulsar{Star: units.StarOf(s), PeriodS: s.PeriodS, FluxMJy: s.FluxMJy, FluxFreqMHz: s.FluxFreqMHz,
-			SpectralIdx: s.SpectralIdx, WidthS: s.WidthS, Scatter1GHzS: s.Scatter1GHzS, JitterUs1h: s.JitterUs1h},
-		sensitivity.Receiver{FreqMHz: r.FreqMHz, BandwidthMHz: r.BandwidthMHz, NPol: r.NPol, TrecK: r.TrecK, TatmK: r.TatmK,
-			GainKPerJy: r.GainKPerJy, Digitisation: r.Digitisation})
+	return sensitivity.NewRadiometer(s.Pulsar(), r.FrontEnd())
 }
 
 // fractions is the usable part of each receiver's band at every mid-step of

@@ -18,12 +18,8 @@ type limits struct {
 }
 
 func newLimits(t *scheduler.Telescope) *limits {
-	l := &limits{kind: t.Mount, elMin: t.ElevationMinDeg, elMax: t.ElevationMaxDeg, sunMin: t.SunMinDeg,
+	return &limits{kind: t.Mount, elMin: t.ElevationMinDeg, elMax: t.ElevationMaxDeg, mask: t.Mask(), sunMin: t.SunMinDeg,
 		ha: [2]float64{15 * t.HourAngleRangeH[0], 15 * t.HourAngleRangeH[1]}, trackMin: t.TrackHalfMin}
-	for _, h := range t.Horizon {
-		l.mask = append(l.mask, sky.MaskPoint{AzDeg: h.AzimuthDeg, ElDeg: h.ElevationDeg})
-	}
-	return l
 }
 
 // check tests one sample of a track and counts why it fails. The cable wrap is

@@ -3,7 +3,6 @@ package units
 import (
 	"fmt"
 
-	"cadencewright/astro"
 	"cadencewright/astro/orbit"
 	"cadencewright/astro/sensitivity"
 	"cadencewright/scheduler"
@@ -102,12 +101,6 @@ func (b *builder) names() error {
 func detectable(s *scheduler.Source, r *scheduler.Receiver) bool {
 	w := sensitivity.BroadenedWidthS(s.WidthS, sensitivity.ScatterS(s.Scatter1GHzS, r.FreqMHz))
 	return sensitivity.Detectable(w, s.PeriodS)
-}
-
-// StarOf is a source's place and motion.
-func StarOf(s *scheduler.Source) astro.Star {
-	return astro.Star{RA: astro.FromDeg(s.RADeg), Dec: astro.FromDeg(s.DecDeg), PosEpochMJD: s.PosEpochMJD,
-		PMRAMasYr: s.PMRAMasYr, PMDecMasYr: s.PMDecMasYr}
 }
 
 // goal fills what all kinds have in common.

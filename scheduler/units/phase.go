@@ -26,17 +26,13 @@ func (b *builder) phase(p *scheduler.PhaseGoal) error {
 	if err != nil {
 		return fmt.Errorf("goal %s: %w", g.ID, err)
 	}
-	ref, err := Reference(p.Reference)
-	if err != nil {
-		return fmt.Errorf("goal %s: %w", g.ID, err)
-	}
 	mine := b.phaseHistory(&g)
 	first := b.s.From
 	for _, h := range mine {
 		first = math.Min(first, h.start)
 	}
 	for i, w := range p.Windows {
-		list, err := ck.clock.Passages(ck.elements, ref, w.From, w.To, Instant(first-1), Instant(b.lastEnd()+1))
+		list, err := ck.clock.Passages(ck.elements, p.Reference.Point(), w.From, w.To, Instant(first-1), Instant(b.lastEnd()+1))
 		if err != nil {
 			return fmt.Errorf("goal %s: window %d: %w", g.ID, i, err)
 		}
@@ -105,7 +101,7 @@ func (b *builder) clock(source int) (*clock, error) {
 	if s.Binary == nil {
 		return nil, fmt.Errorf("source %s has no binary", s.Name)
 	}
-	el, err := Elements(s.Binary)
+	el, err := s.Binary.Elements()
 	if err != nil {
 		return nil, fmt.Errorf("source %s: %w", s.Name, err)
 	}
@@ -121,33 +117,7 @@ func (b *builder) clock(source int) (*clock, error) {
 			return nil, err
 		}
 	}
-	c := &clock{elements: el, clock: b.earth.Clock(StarOf(s))}
+	c := &clock{elements: el, clock: b.earth.Clock(s.Star())}
 	b.clocks[source] = c
 	return c, nil
-}
-
-// Elements are a binary's parameters as an orbit.
-func Elements(b *scheduler.Binary) (orbit.Elements, error) {
-	switch b.Model {
-	case scheduler.BinaryKepler:
-		return orbit.Kepler(orbit.KeplerParams{PbD: b.PbD, A1Ls: b.A1Ls, Ecc: b.Ecc, OmDeg: b.OmDeg, T0MJD: b.T0MJD,
-			OmdotDegYr: b.OmdotDegYr, Pbdot: b.Pbdot, M2Msun: b.M2Msun, Sini: b.Sini})
-	case scheduler.BinaryELL1:
-		return orbit.ELL1(orbit.ELL1Params{PbD: b.PbD, A1Ls: b.A1Ls, TascMJD: b.TascMJD, Eps1: b.Eps1, Eps2: b.Eps2,
-			Pbdot: b.Pbdot, M2Msun: b.M2Msun, Sini: b.Sini})
-	}
-	return orbit.Elements{}, fmt.Errorf("binary model %q: must be kepler or ell1", b.Model)
-}
-
-// Reference is the point of the orbit that phases count from.
-func Reference(r scheduler.PhaseReference) (orbit.Reference, error) {
-	switch r {
-	case scheduler.RefPeriastron:
-		return orbit.Periastron, nil
-	case scheduler.RefNode:
-		return orbit.Node, nil
-	case scheduler.RefConjunction:
-		return orbit.Conjunction, nil
-	}
-	return 0, fmt.Errorf("phase reference %q: must be periastron, node or conjunction", r)
 }

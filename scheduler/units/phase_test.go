@@ -83,12 +83,3 @@ func TestCovers(t *testing.T) {
 		}
 	}
 }
-
-func TestNamesOfModelsAndReferences(t *testing.T) {
-	if _, err := units.Reference("apastron"); err == nil {
-		t.Error("reference apastron: no error")
-	}
-	if _, err := units.Elements(&scheduler.Binary{Model: "bt"}); err == nil {
-		t.Error("model bt: no error")
-	}
-}

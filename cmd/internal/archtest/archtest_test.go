@@ -75,6 +75,7 @@ func TestViolations(t *testing.T) {
 	}{
 		{"scheduler/verify", m + "/scheduler", false},
 		{"scheduler/verify", m + "/scheduler/solve", true},
+		{"scheduler/verify", m + "/scheduler/almanac", true},
 		{"scheduler/solve", m + "/scheduler/feasible", false},
 		{"scheduler", "time", false},
 		{"scheduler", "os", true},

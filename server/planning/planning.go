@@ -38,9 +38,11 @@ type Planner struct {
 // heartbeat is how often a job that runs notes its progress.
 const heartbeat = 400 * time.Millisecond
 
-// Run carries a job out: it makes the plan and stores it as a draft, or ends
-// the job with the reason. A job that has ended already is left alone, so that
-// it is safe to run one twice. An error is worth another try.
+// Run carries a job out: it makes the plan and stores it as a draft. A job
+// that is wanted to stop keeps its best plan so far; before there is one it is
+// cancelled. A job that has ended already is left alone, so that it is safe to
+// run one twice. After an error the job is still to end: the caller tries
+// again or ends it with the reason.
 func (p *Planner) Run(ctx context.Context, jobID int64) error {
 	job, err := p.Store.Job(ctx, jobID)
 	if errors.Is(err, scheduler.ErrNotFound) || err == nil && !job.Active() {
@@ -50,6 +52,9 @@ func (p *Planner) Run(ctx context.Context, jobID int64) error {
 		return err
 	}
 	plan, meta, err := p.make(ctx, job)
+	if errors.Is(err, feasible.ErrStopped) {
+		return p.Store.EndJob(ctx, job.ID, store.JobCancelled, "stopped before the search began: there is no plan yet")
+	}
 	if err != nil {
 		return err
 	}
@@ -68,7 +73,8 @@ func (p *Planner) make(ctx context.Context, job store.PlanJob) (*scheduler.Plan,
 	var latest atomic.Pointer[solve.Progress]
 	told := p.tell(ctx, job.ID, &latest, &stop)
 	problem, result, err := p.search(ctx, c, job, &latest, &stop)
-	if terr := told(); err == nil {
+	// A stop may have come from progress that could not be noted.
+	if terr := told(); terr != nil && (err == nil || errors.Is(err, feasible.ErrStopped)) {
 		err = terr
 	}
 	if err != nil {
@@ -82,7 +88,11 @@ func (p *Planner) make(ctx context.Context, job store.PlanJob) (*scheduler.Plan,
 }
 
 func (p *Planner) search(ctx context.Context, c *scheduler.Campaign, job store.PlanJob, latest *atomic.Pointer[solve.Progress], stop *atomic.Bool) (*feasible.Problem, *solve.Result, error) {
-	problem, err := feasible.Build(c, scheduler.Horizon{From: job.From, To: job.To})
+	stopped := func() bool { return stop.Load() || ctx.Err() != nil }
+	problem, err := feasible.BuildUntil(c, scheduler.Horizon{From: job.From, To: job.To}, stopped)
+	if errors.Is(err, feasible.ErrStopped) && !stop.Load() {
+		err = ctx.Err() // the program is going down: the job will be taken up again
+	}
 	if err != nil {
 		return nil, nil, err
 	}
@@ -90,16 +100,17 @@ func (p *Planner) search(ctx context.Context, c *scheduler.Campaign, job store.P
 		return nil, nil, scheduler.Errorf(scheduler.ErrInvalid, "no block starts in this week: bring in blocks first")
 	}
 	result, err := solve.Solve(problem, solve.Options{Seed: uint64(job.Seed), Effort: p.Effort, Workers: p.Workers,
-		Stop:     func() bool { return stop.Load() || ctx.Err() != nil },
+		Stop:     stopped,
 		Progress: func(q solve.Progress) { latest.Store(&q) }})
 	if err == nil && ctx.Err() != nil && !stop.Load() {
-		err = ctx.Err() // the program is going down: the job will be taken up again
+		err = ctx.Err()
 	}
 	return problem, result, err
 }
 
-// tell notes the progress of a job at intervals, as a sign of life too, and
-// learns whether it is wanted to stop. The function it returns ends that.
+// tell notes the progress of a job at once and then at intervals, as a sign of
+// life too, and learns whether it is wanted to stop. The function it returns
+// ends that.
 func (p *Planner) tell(ctx context.Context, job int64, latest *atomic.Pointer[solve.Progress], stop *atomic.Bool) func() error {
 	done, ended := make(chan struct{}), make(chan error, 1)
 	note := func() error {
@@ -116,10 +127,13 @@ func (p *Planner) tell(ctx context.Context, job int64, latest *atomic.Pointer[so
 		}
 		return err
 	}
+	err := note() // before any work: a job may have been stopped while it was queued
+	if err != nil {
+		stop.Store(true)
+	}
 	go func() {
 		tick := time.NewTicker(heartbeat)
 		defer tick.Stop()
-		err := note()
 		for {
 			select {
 			case <-done:

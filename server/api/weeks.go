@@ -23,7 +23,7 @@ func (a *API) weeks() {
 	register(a, withRequest(op, PlanRequest{Seed: 7}), exampleJob, a.planWeek)
 	register(a, operation("plans", http.MethodGet, "/jobs/{id}", "get-job", "A planning job", "Its progress: score rising, bound falling.", 404), exampleJob, a.getJob)
 	register(a, operation("plans", http.MethodPost, "/jobs/{id}/stop", "stop-job", "Stop a planning job",
-		"It ends soon, with the best plan so far as its draft. One that has ended already is left as it is.", 404), exampleJob, a.stopJob)
+		"It ends soon, with the best plan so far as its draft; one whose search has not begun is cancelled. One that has ended already is left as it is.", 404), exampleJob, a.stopJob)
 }
 
 // WeekInput names a week in a path.

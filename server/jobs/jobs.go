@@ -5,7 +5,10 @@ package jobs
 
 import (
 	"context"
+	"errors"
+	"fmt"
 	"log/slog"
+	"runtime/debug"
 	"time"
 
 	"github.com/jackc/pgx/v5"
@@ -93,10 +96,11 @@ type planWorker struct {
 }
 
 // Work makes the plan. A job that fails for good says why; one that is worth
-// another try goes back to the queue.
+// another try goes back to the queue, and so does one whose program is going
+// down.
 func (w *planWorker) Work(ctx context.Context, job *river.Job[PlanArgs]) error {
-	err := w.planner.Run(ctx, job.Args.JobID)
-	if err == nil || ctx.Err() != nil {
+	err := w.run(ctx, job.Args.JobID)
+	if err == nil || errors.Is(ctx.Err(), context.Canceled) {
 		return err
 	}
 	w.log.Warn("planning failed", "job", job.Args.JobID, "attempt", job.Attempt, "error", err)
@@ -106,7 +110,22 @@ func (w *planWorker) Work(ctx context.Context, job *river.Job[PlanArgs]) error {
 	}
 	c, cancel := context.WithTimeout(context.WithoutCancel(ctx), 10*time.Second)
 	defer cancel()
-	return w.store.EndJob(c, job.Args.JobID, store.JobFailed, err.Error())
+	if err := w.store.EndJob(c, job.Args.JobID, store.JobFailed, err.Error()); !errors.Is(err, scheduler.ErrNotFound) {
+		return err
+	}
+	return nil // somebody else has ended it already
+}
+
+// run carries the job out. A panic is a failure like others: left to the queue
+// it would end the last attempt without a word to who waits for the plan.
+func (w *planWorker) run(ctx context.Context, id int64) (err error) {
+	defer func() {
+		if p := recover(); p != nil {
+			w.log.Error("planning panicked", "job", id, "panic", p, "stack", string(debug.Stack()))
+			err = fmt.Errorf("a fault of the program: %v", p)
+		}
+	}()
+	return w.planner.Run(ctx, id)
 }
 
 // warnings lets through what is a warning or worse: the queue is chatty.

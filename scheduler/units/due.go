@@ -95,7 +95,7 @@ func (b *builder) last(g *Goal) (float64, bool) {
 				return a.start, true
 			}
 		case scheduler.KindBandPair:
-			if paired(able[:i+1], a, g) || paired(sameStart(able, i), a, g) {
+			if paired(able[:i+1], a, g) {
 				return a.start, true
 			}
 		}
@@ -107,15 +107,6 @@ func (b *builder) last(g *Goal) (float64, bool) {
 type past struct {
 	scan
 	bands BandSet
-}
-
-// sameStart are the scans after i that start with it.
-func sameStart(able []past, i int) []past {
-	j := i + 1
-	for j < len(able) && able[j].start == able[i].start {
-		j++
-	}
-	return able[i+1 : j]
 }
 
 // overlapped tells whether a common time of enough telescopes in one band
@@ -140,7 +131,8 @@ func overlapped(able []past, a past, g *Goal) bool {
 }
 
 // paired tells whether a, with one of the scans not after it, or alone, makes
-// up both bands in time.
+// up both bands in time. Of two that start together the later one in order
+// finds the other.
 func paired(able []past, a past, g *Goal) bool {
 	for _, h := range able {
 		if h.start <= a.start && a.start-h.start <= g.WithinMin+MS && a.bands|h.bands == g.bands {

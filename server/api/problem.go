@@ -17,8 +17,11 @@ import (
 )
 
 // The library makes its own errors (a body that does not fit its schema) by
-// these two variables: once for the whole program, before anything is served.
+// variables: they are set once for the whole program, before anything is served.
 func init() {
+	// A key in other letters is another key: of "state" and "State" in one
+	// body nobody could say which was meant.
+	huma.ValidateStrictCasing = true
 	huma.NewError = func(status int, msg string, errs ...error) huma.StatusError {
 		return libraryProblem(context.Background(), status, msg, errs)
 	}

@@ -63,6 +63,7 @@ var Homes = []struct {
 	{"github.com/soniakeys", []string{"astro/internal/meeus"}, "the almanac's sign and range traps are handled once"},
 	{"github.com/go-pdf/fpdf", []string{"server/runsheet"}, "PDF has one home"},
 	{"github.com/prometheus", []string{"server"}, "metrics are made in the service, not in the planner"},
+	{"C", []string{"astro/internal/erfabench"}, "the program is built without cgo; only a comparison needs it"},
 	{"golang.org/x/crypto", []string{"server/auth"}, "password hashing has one home"},
 }
 

@@ -21,13 +21,16 @@ type annealer struct {
 	oust  float64
 	floor float64
 	party []*scan
-	crowd int // a source that may have a scan too many, or -1
+	reach []float64 // by goal: the most that it could earn
+	crowd int       // a source that may have a scan too many, or -1
 }
 
 func newAnnealer(s *state, menus []menu, seed uint64) *annealer {
 	a := &annealer{drawer: drawer{t: s.t, s: s, menus: menus, rng: rand.New(rand.NewPCG(seed, 0x9e3779b97f4a7c15))}, oust: 0.1}
 	a.thrift = s.t.thrift
+	a.reach = make([]float64, len(s.goals))
 	for ui := range menus {
+		a.reach[s.t.p.Units.Units[ui].Goal] += menus[ui].top
 		if len(menus[ui].refs) > 0 {
 			a.units = append(a.units, ui)
 		}
@@ -84,12 +87,17 @@ func (a *annealer) change() int {
 	}
 }
 
-// wanting draws a unit, one that is not served yet rather than one that is.
+// hunger is how much more than it does a goal should be able to earn to be drawn
+// every time, in units of scale.
+const hunger = 0.3
+
+// wanting draws a unit, one whose goal could earn much more than it does rather
+// than one whose goal could not.
 func (a *annealer) wanting() int {
-	for range 6 {
+	for range 8 {
 		ui := a.units[a.rng.IntN(len(a.units))]
-		g := a.s.goals[a.t.p.Units.Units[ui].Goal]
-		if a.s.earned[g.index] < 0.95*g.weight || a.rng.IntN(8) == 0 {
+		g := a.t.p.Units.Units[ui].Goal
+		if a.reach[g]-a.s.earned[g] > hunger*a.rng.Float64()*a.t.scale() || a.rng.IntN(16) == 0 {
 			return ui
 		}
 	}

@@ -12,6 +12,7 @@ import (
 type menu struct {
 	refs   []cellRef
 	blocks []blockRefs
+	top    float64 // the largest value of any
 }
 
 // cellRef is a cell and its row for the unit: val[i] is what a start at from+i
@@ -62,6 +63,7 @@ func newMenus(t *table) []menu {
 					m.blocks = append(m.blocks, blockRefs{bi, len(m.refs), len(m.refs), lo, hi})
 				}
 				br := &m.blocks[len(m.blocks)-1]
+				m.top = max(m.top, r.max*float64(t.p.Units.Units[r.unit].Cap)/float64(r.load))
 				m.refs = append(m.refs, cellRef{int32(bi), int32(ci), int32(c.steps), int32(c.steps + b.MinGap), int32(r.from), r.val})
 				br.to++
 				br.earliest, br.latest = min(br.earliest, lo), max(br.latest, hi)

@@ -65,7 +65,7 @@ type Result struct {
 // DefaultEffort is how much search suits a horizon: more for more units, some
 // seconds for a week of a few telescopes.
 func DefaultEffort(p *feasible.Problem) int64 {
-	return int64(min(max(len(p.Units.Units)*15, 300), 40_000))
+	return int64(min(max(len(p.Units.Units)*25, 1500), 100_000))
 }
 
 // provenGap is the relative gap below which a plan counts as the best there is.

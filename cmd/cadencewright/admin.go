@@ -27,6 +27,9 @@ func withDatabase(ctx context.Context, std stdio, f func(*database, config.Confi
 	return f(db, cfg)
 }
 
+// migrateCommand opens the database, which migrates it, and does nothing else:
+// for a deployment that brings the schema up to date before it starts several
+// copies of the service.
 var migrateCommand = command{
 	name: "migrate", short: "bring the database's schema up to date",
 	long:     "Brings the schema up to date and ends. serve and demo do the same when they start; several may do it at once.",
@@ -44,6 +47,8 @@ var migrateCommand = command{
 	},
 }
 
+// importCommand stores a campaign file. The file is read and checked before the
+// database is opened, so that a wrong one does not start a private Postgres.
 var importCommand = command{
 	name: "import", args: "CAMPAIGN.json", short: "store a campaign file in the database",
 	long:     "Checks a campaign file and stores all of it, or nothing. The first campaign stored is the live one, which pages and control scripts serve.",
@@ -68,6 +73,8 @@ var importCommand = command{
 	},
 }
 
+// exportCommand is the way back from the database to a file: what it writes can
+// be planned and checked by the commands that need no database.
 var exportCommand = command{
 	name: "export", short: "write the live campaign as a file",
 	long:     "Writes the live campaign, history and all, as a campaign file in canonical order.",
@@ -79,12 +86,14 @@ var exportCommand = command{
 			if err := exactly(args); err != nil {
 				return err
 			}
+			// As everywhere, a place that cannot be written to is known before any work.
 			o, err := openOutput(std, *out)
 			if err != nil {
 				return err
 			}
 			defer o.discard()
 			return withDatabase(ctx, std, func(db *database, _ config.Config) error {
+				// 0 is no number of a campaign: the flag was left out.
 				id := *number
 				if id == 0 {
 					ref, err := db.store.LiveCampaign(ctx)
@@ -94,6 +103,7 @@ var exportCommand = command{
 					id = ref.ID
 				}
 				c, _, err := db.store.LoadCampaign(ctx, id)
+				// The store's own words are for the service's clients.
 				if errors.Is(err, scheduler.ErrNotFound) {
 					return fmt.Errorf("there is no campaign number %d", id)
 				}
@@ -110,6 +120,8 @@ var exportCommand = command{
 	},
 }
 
+// healthCommand asks /readyz: the service answers 200 there only while it
+// reaches its database and takes requests.
 var healthCommand = command{
 	name: "health", short: "ask a running service whether it is well",
 	long:     "Asks the service at an address whether it can answer, and ends with exit code 0 or 1: for a container's health check.",
@@ -124,9 +136,12 @@ var healthCommand = command{
 			if err != nil {
 				return err
 			}
+			// Inside a container both come from the same environment.
 			if *addr == "" {
 				*addr = cfg.Addr
 			}
+			// Shorter than what containers usually allow a health check, so that the
+			// reason is printed before the check itself is ended.
 			ctx, cancel := context.WithTimeout(ctx, 3*time.Second)
 			defer cancel()
 			req, err := http.NewRequestWithContext(ctx, http.MethodGet, "http://"+*addr+"/readyz", nil)

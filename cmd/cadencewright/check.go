@@ -13,6 +13,8 @@ import (
 	"cadencewright/scheduler/verify"
 )
 
+// checkCommand is the judge of plans, whoever made them. It depends on the
+// campaign and the plan alone and reads no database.
 var checkCommand = command{
 	name:  "check",
 	args:  "CAMPAIGN.json PLAN.json",
@@ -30,6 +32,8 @@ phase windows 1 s, numbers one part in a thousand.`,
 		"cadencewright plan campaign.json | cadencewright check campaign.json -",
 	},
 	setup: func(flags *flag.FlagSet) action {
+		// There is no flag for tolerances: a plan that passes only a looser check
+		// than the planning model's is not good.
 		asJSON := flags.Bool("json", false, "write the whole report as JSON")
 		skip := flags.Bool("no-bound", false, "leave the bound alone, which takes most of the time")
 		return func(ctx context.Context, std stdio, args []string) error {
@@ -43,6 +47,7 @@ phase windows 1 s, numbers one part in a thousand.`,
 
 // check reads both files, checks the plan and writes the report.
 func check(ctx context.Context, std stdio, campaignPath, planPath string, asJSON, skipBound bool) error {
+	// Standard input can be read once.
 	if campaignPath == "-" && planPath == "-" {
 		return usagef("only one of the two files can come from standard input")
 	}
@@ -63,6 +68,7 @@ func check(ctx context.Context, std stdio, campaignPath, planPath string, asJSON
 	if err != nil {
 		return err
 	}
+	// The report is written whole, good or bad; the exit code says which.
 	if asJSON {
 		err = writeJSON(std.out, reportJSON(report, skipBound))
 	} else {
@@ -102,9 +108,11 @@ func reportText(r *verify.Report, skipBound bool) string {
 			fmt.Fprintf(&b, "%s%s\n", before, v)
 		}
 	}
+	// Notes break no rule and do not change the exit code.
 	list(r.Violations, "")
 	list(r.Notes, "note: ")
 	// The last line is for programs too: words and numbers in a fixed order.
+	// A unit of orbital phase that was earned at least once counts as earned.
 	earned, total := 0, len(r.Units)
 	for _, times := range r.Units {
 		if times > 0 {
@@ -122,6 +130,9 @@ func reportText(r *verify.Report, skipBound bool) string {
 // violationJSON is one broken rule as it is written; what it has nothing to
 // say about is left out.
 type violationJSON struct {
+	// Rule is the name of a kind in package verify; it stays as it is, for
+	// programs. Scan counts from 0 in the plan's list. Value and Allowed are in
+	// Measure: deg, s, us, h, d, min or score.
 	Rule    string   `json:"rule"`
 	Text    string   `json:"text"`
 	Scan    *int     `json:"scan,omitempty"`
@@ -138,6 +149,8 @@ func reportJSON(r *verify.Report, skipBound bool) any {
 		out := make([]violationJSON, 0, len(found))
 		for _, v := range found {
 			j := violationJSON{Rule: string(v.Kind), Text: v.Text, Block: v.Block, Unit: v.Unit, Measure: v.Measure}
+			// Pointers, so that scan 0 and a value of 0 are written and what a rule
+			// is not about is left out.
 			if v.Scan >= 0 {
 				j.Scan = &v.Scan
 			}
@@ -148,6 +161,7 @@ func reportJSON(r *verify.Report, skipBound bool) any {
 		}
 		return out
 	}
+	// A bound that was not worked out is left out: 0 would be a claim.
 	report := map[string]any{"ok": r.OK(), "score": r.Score, "possible": r.Possible, "units": r.Units,
 		"violations": list(r.Violations), "notes": list(r.Notes)}
 	if !skipBound {

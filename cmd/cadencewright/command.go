@@ -35,6 +35,7 @@ type stdio struct {
 
 // The program's exit codes.
 const (
+	// Scripts depend on these numbers: they do not change.
 	exitOK     = 0
 	exitFailed = 1 // the answer is no, or something outside failed
 	exitUsage  = 2 // wrong usage or unusable input
@@ -66,6 +67,7 @@ var errAnswerNo = errors.New("the answer is no")
 // code.
 func run(ctx context.Context, args []string, stdin io.Reader, stdout, stderr io.Writer) int {
 	std := stdio{in: stdin, out: stdout, err: stderr}
+	// Nothing asked for is wrong usage, with the list of what there is.
 	if len(args) == 0 {
 		fmt.Fprint(stderr, overview())
 		return exitUsage
@@ -74,6 +76,7 @@ func run(ctx context.Context, args []string, stdin io.Reader, stdout, stderr io.
 	switch name {
 	case "help", "-h", "-help", "--help":
 		return help(std, rest)
+	// As people expect of any program.
 	case "-version", "--version":
 		name = "version"
 	}
@@ -111,6 +114,7 @@ func (c *command) report(std stdio, err error) int {
 	switch {
 	case err == nil:
 		return exitOK
+	// Said already, on standard output.
 	case errors.Is(err, errAnswerNo):
 		return exitFailed
 	case errors.As(err, &usage):
@@ -130,6 +134,7 @@ func (c *command) report(std stdio, err error) int {
 func parseMixed(flags *flag.FlagSet, args []string) ([]string, error) {
 	var positional []string
 	for {
+		// Once for each stretch of flags between positional arguments.
 		if err := flags.Parse(args); err != nil {
 			return nil, err
 		}

@@ -22,6 +22,8 @@ func readInput(std stdio, path string) ([]byte, error) {
 		return nil, inputError{plainPathError("reading", err)}
 	}
 	defer f.Close()
+	// The size is looked at first: a file that is far too large is not read
+	// into memory to find that out. Pipes have none and are cut off instead.
 	info, err := f.Stat()
 	switch {
 	case err == nil && info.IsDir():
@@ -64,6 +66,8 @@ func plainPathError(doing string, err error) error {
 
 // readCampaign reads and checks a campaign file.
 func readCampaign(std stdio, path string) (*scheduler.Campaign, error) {
+	// All problems of a file are reported together, each with its place, so
+	// that one run is enough to mend it.
 	data, err := readInput(std, path)
 	if err != nil {
 		return nil, err
@@ -77,6 +81,7 @@ func readCampaign(std stdio, path string) (*scheduler.Campaign, error) {
 
 // unusable puts a file's name above the list of its problems.
 func unusable(kind, path string, err error) error {
+	// A single problem stands on the same line, several in a list below.
 	var problems scheduler.Problems
 	if errors.As(err, &problems) && len(problems) > 1 {
 		return inputError{fmt.Errorf("the %s file %s has %d problems:\n%w", kind, path, len(problems), err)}
@@ -88,6 +93,7 @@ func unusable(kind, path string, err error) error {
 // appears whole or not at all. It is opened before the work begins, so that a
 // folder that cannot be written to is known at once.
 type output struct {
+	// For standard output and devices what is written is there at once.
 	w    io.Writer
 	name string
 	// For a regular file: the file written to and the name it gets at the end.
@@ -116,6 +122,8 @@ func openOutput(std stdio, path string) (*output, error) {
 		}
 		return &output{w: f, name: path, temp: f}, nil
 	}
+	// In the same folder, because only within one file system is a rename
+	// all or nothing.
 	f, err := createBeside(final)
 	if err != nil {
 		return nil, fmt.Errorf("writing %s: %w", path, rootCause(err))
@@ -147,6 +155,8 @@ func createBeside(path string) (*os.File, error) {
 // commit writes data and makes it appear under its name. On an error nothing
 // has changed there.
 func (o *output) commit(data []byte) error {
+	// Every error is kept until the file is closed: it must be closed and
+	// removed in any case.
 	_, err := o.w.Write(data)
 	if err == nil && o.final != "" {
 		err = o.temp.Sync() // some disks find out only now that they are full
@@ -175,6 +185,7 @@ func (o *output) discard() {
 	if o.temp == nil {
 		return
 	}
+	// Errors do not matter any more: the file is not wanted.
 	o.temp.Close()
 	if o.final != "" {
 		os.Remove(o.temp.Name())

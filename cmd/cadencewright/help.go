@@ -7,7 +7,9 @@ import (
 	"strings"
 )
 
-// overview is the list of commands.
+// overview is the list of commands. All help is made from the table of commands
+// and their flags, so that it cannot name a flag that is not there or leave one
+// out.
 func overview() string {
 	var b strings.Builder
 	b.WriteString("cadencewright makes weekly observing plans for a pulsar timing array.\n\n" +
@@ -48,6 +50,7 @@ func (c *command) help() string {
 	fmt.Fprintf(&b, "usage: %s\n\n%s\n", c.usage(), strings.TrimSpace(c.long))
 	flags := flag.NewFlagSet(c.name, flag.ContinueOnError)
 	flags.SetOutput(io.Discard)
+	// Declaring the flags anew costs nothing and runs nothing of the command.
 	c.setup(flags)
 	first := true
 	flags.VisitAll(func(f *flag.Flag) {
@@ -68,6 +71,7 @@ func (c *command) help() string {
 
 // flagHelp describes one flag on a line or two.
 func flagHelp(f *flag.Flag) string {
+	// The word in backquotes in a flag's description is its value's name.
 	value, usage := flag.UnquoteUsage(f)
 	line := "  --" + f.Name
 	if value != "" {
@@ -106,6 +110,8 @@ func unknown(name string) string {
 // editDistance is the number of single-character insertions, deletions and
 // replacements that turn a into b.
 func editDistance(a, b string) int {
+	// Levenshtein's distance, one row of the table at a time; row[j] is the
+	// distance of a's first i characters from b's first j.
 	row := make([]int, len(b)+1)
 	for j := range row {
 		row[j] = j

@@ -12,6 +12,7 @@ import (
 // from a start to an end.
 type horizonFlags struct{ week, from, to string }
 
+// declare adds the flags to a command's.
 func (h *horizonFlags) declare(flags *flag.FlagSet) {
 	flags.StringVar(&h.week, "week", "", "ISO `WEEK` to plan, such as 2027-W03; that of the campaign's first block if left out")
 	flags.StringVar(&h.from, "from", "", "`START` of another stretch of time to plan: 2027-01-18 or 2027-01-18T12:00Z")
@@ -26,6 +27,7 @@ func (h *horizonFlags) horizon(c *scheduler.Campaign) (scheduler.Horizon, error)
 	var horizon scheduler.Horizon
 	var err error
 	switch {
+	// Two ways to say the same could say different things.
 	case h.week != "" && (h.from != "" || h.to != ""):
 		return horizon, usagef("give --week or --from and --to, not both")
 	case h.week != "":
@@ -39,8 +41,11 @@ func (h *horizonFlags) horizon(c *scheduler.Campaign) (scheduler.Horizon, error)
 	case h.to != "":
 		return horizon, usagef("--to goes with --from")
 	default:
+		// The week of the first block: what a campaign file for one week means.
 		horizon = scheduler.DefaultHorizon(c)
 	}
+	// An empty plan would be a right answer and never what was wanted: most
+	// likely the week is mistyped.
 	if len(horizon.Blocks(c)) == 0 {
 		return horizon, inputError{fmt.Errorf("no block starts in %s; %s", describeHorizon(horizon), blocksReach(c))}
 	}
@@ -53,6 +58,7 @@ func (h *horizonFlags) stretch() (scheduler.Horizon, error) {
 	if err != nil {
 		return scheduler.Horizon{}, err
 	}
+	// A horizon need not begin on a Monday or at midnight.
 	to := from.Add(scheduler.Week)
 	if h.to != "" {
 		if to, err = parseInstant("to", h.to, time.Time{}); err != nil {
@@ -71,6 +77,7 @@ func (h *horizonFlags) stretch() (scheduler.Horizon, error) {
 
 // describeHorizon names a horizon: a whole ISO week by its name.
 func describeHorizon(h scheduler.Horizon) string {
+	// Weeks begin on Monday 00:00 UTC, whatever the telescopes' zones.
 	if h.From.Equal(scheduler.WeekStart(h.From)) && h.To.Sub(h.From) == scheduler.Week {
 		return scheduler.WeekName(h.From)
 	}
@@ -82,6 +89,7 @@ func blocksReach(c *scheduler.Campaign) string {
 	if len(c.Blocks) == 0 {
 		return "the campaign has no blocks"
 	}
+	// A file's blocks may stand in any order.
 	first, last := c.Blocks[0].Start, c.Blocks[0].Start
 	for _, b := range c.Blocks {
 		if b.Start.Before(first) {

@@ -11,6 +11,10 @@ import (
 	"cadencewright/server/config"
 )
 
+// keyCommand manages the keys by which telescopes' control scripts call the API.
+// A key belongs to one telescope: a script that is mistaken, or a key that leaks,
+// cannot report for another. Several keys of one telescope may be valid at once,
+// so that one can be replaced without a gap.
 var keyCommand = command{
 	name: "key", args: "NAME", short: "make or revoke a control script's key",
 	long: `Makes a key for the control script of one telescope and shows it once; only its
@@ -34,6 +38,7 @@ hash is kept. --revoke ends the key of that name. --list lists all keys.`,
 			switch {
 			case name == "":
 				return usagef("NAME is empty")
+			// A key for all telescopes does not exist, and so no default.
 			case *tel == "" && !*revoke:
 				return usagef("--telescope is missing: a key is for one telescope")
 			case *tel != "" && *revoke:
@@ -49,6 +54,7 @@ hash is kept. --revoke ends the key of that name. --list lists all keys.`,
 	},
 }
 
+// revokeKey ends a key: the next request with it is refused.
 func revokeKey(ctx context.Context, std stdio, db *database, name string) error {
 	if err := db.store.RevokeKey(ctx, name, "command line"); err != nil {
 		return err
@@ -57,6 +63,8 @@ func revokeKey(ctx context.Context, std stdio, db *database, name string) error 
 	return err
 }
 
+// addKey makes a key of random characters for a telescope of the live campaign.
+// The database keeps only its hash, so it can be shown only here.
 func addKey(ctx context.Context, std stdio, db *database, name, telescope string) error {
 	if err := telescopeThere(ctx, db, telescope); err != nil {
 		return err
@@ -69,6 +77,8 @@ func addKey(ctx context.Context, std stdio, db *database, name, telescope string
 	return err
 }
 
+// listKeys writes a line a key, the revoked ones too. A key that was never used
+// or not for a long time is one that can go.
 func listKeys(ctx context.Context, std stdio, db *database) error {
 	keys, err := db.store.Keys(ctx)
 	if err != nil {

@@ -9,6 +9,8 @@ import (
 	"cadencewright/scheduler/almanac"
 )
 
+// orbitCommand answers questions about orbits without planning anything: it is
+// how to see whether an ephemeris in a campaign file is what one thinks it is.
 var orbitCommand = command{
 	name:  "orbit",
 	args:  "[CAMPAIGN.json]",
@@ -33,6 +35,7 @@ anomaly from the named point; good to 0.03 s and the elements' own accuracy.`,
 		flags.StringVar(&q.source, "source", "", "`NAME` of the source in the campaign file; all binaries if left out")
 		q.place.declare(flags)
 		q.elements.declare(flags)
+		// Without a length the question is about one instant.
 		q.span.declare(flags, "")
 		flags.StringVar(&q.step, "step", "1h", "`STEP` of the table over --for or --to")
 		flags.IntVar(&q.next, "next", 3, "how `MANY` coming events of each kind to list, 0 to 1000")
@@ -65,6 +68,7 @@ func (q *orbitQuestion) answer(_ context.Context, std stdio, args []string) erro
 	if q.next < 0 || q.next > 1000 {
 		return usagef("--next is %d; allowed is 0 to 1000", q.next)
 	}
+	// The only clock of the answer: "now" on the command line.
 	from, to, err := q.span.parse(time.Now(), 0)
 	if err != nil {
 		return err
@@ -92,6 +96,7 @@ func (q *orbitQuestion) answer(_ context.Context, std stdio, args []string) erro
 // next where the two are one.
 func askOrbit(src *scheduler.Source, goals []scheduler.PhaseGoal, from, to time.Time, step time.Duration, next int) (orbitOf, error) {
 	a := orbitOf{source: src}
+	// Made for the span: barycentric time is worked out once for all of it.
 	o, err := almanac.NewOrbit(src, from, to)
 	if err != nil {
 		return a, err
@@ -141,6 +146,7 @@ func (q *orbitQuestion) subjects(std stdio, args []string) ([]*scheduler.Source,
 	if err := exactly(args, "CAMPAIGN.json"); err != nil {
 		return nil, nil, err
 	}
+	// Taking both would leave open which of them the answer is about.
 	if q.place.given() || q.elements.pbD != 0 {
 		return nil, nil, usagef("give a campaign file or a place and elements, not both")
 	}
@@ -152,6 +158,7 @@ func (q *orbitQuestion) subjects(std stdio, args []string) ([]*scheduler.Source,
 		src, err := pickSource(c, q.source)
 		return []*scheduler.Source{src}, c.PhaseGoals, err
 	}
+	// A campaign without --source is a question about all of its binaries.
 	var binaries []*scheduler.Source
 	for i := range c.Sources {
 		if c.Sources[i].Binary != nil {
@@ -166,6 +173,8 @@ func (q *orbitQuestion) subjects(std stdio, args []string) ([]*scheduler.Source,
 
 // elementFlags give an orbit by its elements.
 type elementFlags struct {
+	// In the units of a campaign file: days, light-seconds, degrees, MJD in
+	// TDB, degrees a year, solar masses; the others are plain numbers.
 	pbD, a1Ls, ecc, omDeg, t0, omdot, pbdot, tasc, eps1, eps2, m2, sini float64
 }
 
@@ -204,6 +213,7 @@ func (e *elementFlags) binary(flags *flag.FlagSet) (*scheduler.Binary, error) {
 	b := &scheduler.Binary{Model: scheduler.BinaryKepler, PbD: e.pbD, A1Ls: e.a1Ls, Ecc: e.ecc, OmDeg: e.omDeg, T0MJD: e.t0,
 		OmdotDegYr: e.omdot, Pbdot: e.pbdot, TascMJD: e.tasc, Eps1: e.eps1, Eps2: e.eps2, M2Msun: e.m2, Sini: e.sini}
 	switch {
+	// Each epoch belongs to one model, and the other elements with it.
 	case set["t0"] == set["tasc"]:
 		return nil, usagef("give one epoch: --t0 (periastron) or --tasc (ascending node)")
 	case set["tasc"] && (set["ecc"] || set["om"] || set["omdot"]):
@@ -213,6 +223,7 @@ func (e *elementFlags) binary(flags *flag.FlagSet) (*scheduler.Binary, error) {
 	case set["tasc"]:
 		b.Model = scheduler.BinaryELL1
 	}
+	// Ranges are the orbit's own, so that flags and files allow the same.
 	if _, err := b.Elements(); err != nil {
 		return nil, usagef("the orbit: %v", err)
 	}

@@ -12,6 +12,7 @@ import (
 
 // orbitAnswer is where binaries stand, at one instant or over a time.
 type orbitAnswer struct {
+	// The two are the same where the question was about one instant.
 	from, to   time.Time
 	eventsOnly bool
 	orbits     []orbitOf
@@ -19,6 +20,8 @@ type orbitAnswer struct {
 
 // orbitOf is the answer for one source.
 type orbitOf struct {
+	// Passages are those of windows that the campaign wants; there are none
+	// for an orbit given by its elements.
 	source   *scheduler.Source
 	states   []almanac.OrbitState
 	events   []almanac.OrbitEvent
@@ -28,6 +31,7 @@ type orbitOf struct {
 // write writes the answer in one of the three forms; the table of several
 // binaries at one instant is a line each.
 func (a *orbitAnswer) write(w io.Writer, format string) error {
+	// CSV has one kind of line: phases, or events where only they are wanted.
 	switch {
 	case format == formJSON:
 		return writeJSON(w, a.json())
@@ -62,6 +66,7 @@ func (a *orbitAnswer) overview(b *strings.Builder) error {
 	fmt.Fprintf(b, "at %s UTC; phases in cycles\n\n", a.from.Format(minuteLayout))
 	t := rows{columns: []string{"source", "period d", "from periastron", "from node", "from conjunction", "next periastron", "next conjunction"}}
 	for _, o := range a.orbits {
+		// One state a binary: overview is for one instant.
 		s := o.states[0]
 		t.add(o.source.Name, fmt.Sprintf("%.6g", o.source.Binary.PbD), phase(s.FromPeriastron), phase(s.FromNode), phase(s.FromConjunction),
 			o.first(scheduler.RefPeriastron), o.first(scheduler.RefConjunction))
@@ -87,6 +92,7 @@ func (o *orbitOf) first(point scheduler.PhaseReference) string {
 func (a *orbitAnswer) describe(b *strings.Builder, o *orbitOf) error {
 	p := o.source.Binary
 	fmt.Fprintf(b, "%s   period %.10g d", o.source.Name, p.PbD)
+	// An ELL1 orbit is nearly round; its eccentricity is no number of its own.
 	if p.Model == scheduler.BinaryKepler {
 		fmt.Fprintf(b, ", eccentricity %g", p.Ecc)
 	}
@@ -98,6 +104,8 @@ func (a *orbitAnswer) describe(b *strings.Builder, o *orbitOf) error {
 		fmt.Fprintf(b, "phase from periastron %.6f, from the node %.6f, from conjunction %.6f; orbit %d\n", s.FromPeriastron, s.FromNode,
 			s.FromConjunction, s.OrbitNumber)
 		fmt.Fprintf(b, "true anomaly %.3f deg, omega %.4f deg, from the node %.3f deg\n", s.TrueAnomalyDeg, s.OmegaDeg, s.ArgumentDeg)
+		// Without a projected axis there is no delay to speak of, and without mass
+		// and inclination of the companion none in its gravity.
 		if p.A1Ls > 0 {
 			fmt.Fprintf(b, "delay in the orbit %+.6f s", s.RoemerS)
 			if p.M2Msun > 0 && p.Sini > 0 {
@@ -143,6 +151,8 @@ func (o *orbitOf) describeEvents(b *strings.Builder) error {
 
 // stateRows are the phases as a table of plain values.
 func (a *orbitAnswer) stateRows() *rows {
+	// Column names carry their units; their order does not change, and new
+	// columns come last.
 	r := &rows{columns: []string{"source", "utc", "barycentric_minus_utc_s", "orbit", "phase_periastron", "phase_node", "phase_conjunction",
 		"true_anomaly_deg", "omega_deg", "argument_deg", "roemer_s", "shapiro_us"}}
 	for _, o := range a.orbits {
@@ -160,6 +170,7 @@ func (a *orbitAnswer) stateRows() *rows {
 // plain values.
 func (a *orbitAnswer) eventRows() *rows {
 	r := &rows{columns: []string{"source", "event", "utc", "until_utc", "orbit"}}
+	// Events are good to some hundredths of a second; the next digit is kept.
 	at := func(t time.Time) string { return t.Round(time.Millisecond).Format(milliLayout) }
 	for _, o := range a.orbits {
 		for _, e := range o.events {

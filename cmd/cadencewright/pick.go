@@ -13,6 +13,7 @@ func pickSource(c *scheduler.Campaign, name string) (*scheduler.Source, error) {
 	if s := c.SourceByName(name); s != nil {
 		return s, nil
 	}
+	// Only now, when the name is wrong, are the others needed.
 	names := make([]string, len(c.Sources))
 	for i := range c.Sources {
 		names[i] = c.Sources[i].Name
@@ -34,6 +35,7 @@ func pickTelescopes(c *scheduler.Campaign, codes string) ([]*scheduler.Telescope
 	if codes == "" {
 		return list, nil
 	}
+	// In the order asked for, which is the order of the answer.
 	for _, code := range strings.Split(codes, ",") {
 		t := c.TelescopeByCode(strings.TrimSpace(code))
 		if t == nil {
@@ -46,6 +48,7 @@ func pickTelescopes(c *scheduler.Campaign, codes string) ([]*scheduler.Telescope
 
 // notThere says what the campaign has instead.
 func notThere(kind, name string, known []string) error {
+	// More names than that are no help on a terminal; the nearest one is.
 	const most = 12
 	have := "it has none"
 	if n := len(known); n > 0 {

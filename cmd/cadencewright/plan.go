@@ -16,6 +16,9 @@ import (
 	"cadencewright/scheduler/verify"
 )
 
+// planCommand plans from a file, without a database or a service, by the same
+// steps as the service's planning jobs: read the sky, search, say why what is
+// unmet is unmet, re-check, and only then write.
 var planCommand = command{
 	name:  "plan",
 	args:  "CAMPAIGN.json",
@@ -38,6 +41,8 @@ plan to keep: that is said, nothing is written, and the exit code is 1.`,
 		q.horizon.declare(flags)
 		flags.StringVar(&q.out, "out", "-", "`FILE` to write the plan to; - is standard output")
 		flags.Int64Var(&q.effort, "effort", 0, "how much to search, in thousands of changes `TRIED`; if left out, what suits the number of units")
+		// Time is a limit and never a reason for another plan by itself: who
+		// wants the same bytes again gives an effort.
 		flags.Float64Var(&q.seconds, "seconds", 0, "stop the search after so many `SECONDS`, and search until then if --effort is left out")
 		flags.Uint64Var(&q.seed, "seed", 0, "`NUMBER` that the search's random choices start from")
 		flags.IntVar(&q.workers, "workers", runtime.GOMAXPROCS(0), "how many `CORES` may share the work; it does not change the plan")
@@ -115,6 +120,7 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 	if err := soundPlan(c, result.Plan); err != nil {
 		return err
 	}
+	// Written whole or not at all, and only now that the re-check has passed.
 	data, err := scheduler.WritePlan(result.Plan)
 	if err != nil {
 		return err
@@ -197,6 +203,7 @@ func soundPlan(c *scheduler.Campaign, p *scheduler.Plan) error {
 // planSummary says in a few lines what came out.
 func planSummary(problem *feasible.Problem, r *solve.Result, took time.Duration) string {
 	p := r.Plan
+	// A plan lists no blocks: those that are used are counted by their scans.
 	blocks := map[string]bool{}
 	for _, s := range p.Scans {
 		blocks[s.Block] = true

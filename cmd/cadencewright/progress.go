@@ -32,6 +32,8 @@ func newProgressLine(w io.Writer) *progressLine {
 
 // isTerminal reports whether w is a character device, as a terminal is.
 func isTerminal(w io.Writer) bool {
+	// Anything else, such as a buffer of a test or a pipe to another program,
+	// gets no progress: control characters would only be in the way.
 	f, ok := w.(*os.File)
 	if !ok {
 		return false
@@ -51,6 +53,7 @@ func (p *progressLine) show(effort int64, score, bound float64) {
 		return
 	}
 	p.last, p.shown = now, true
+	// The bound comes later than the first score, and the gap with it.
 	line := fmt.Sprintf("%6.1f s  effort %d  score %.3f", now.Sub(p.start).Seconds(), effort, score)
 	if bound > 0 {
 		line += fmt.Sprintf("  bound %.3f  gap %.2f %%", bound, 100*gap(score, bound))

@@ -7,6 +7,9 @@ import (
 	"cadencewright/scheduler"
 )
 
+// schemaCommand prints what the readers of files check by, made from the same
+// tables: an editor that knows JSON Schema can then complete and check a campaign
+// while it is written.
 var schemaCommand = command{
 	name:  "schema",
 	args:  "campaign|plan",

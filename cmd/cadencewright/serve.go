@@ -18,6 +18,8 @@ import (
 	"cadencewright/server/store"
 )
 
+// serveCommand is the service as it is run in earnest: with no campaign it
+// serves empty pages until one is imported.
 var serveCommand = command{
 	name:  "serve",
 	short: "serve pages and the REST API",
@@ -41,6 +43,8 @@ environment; --print-config lists them with their values.`,
 	},
 }
 
+// demoCommand is serve with something to look at. It is also how to try the
+// program on a machine where nothing but the Postgres programs is installed.
 var demoCommand = command{
 	name:  "demo",
 	short: "serve a demonstration campaign, ready to look at",
@@ -59,6 +63,7 @@ Ctrl-C. What you do in it is kept for the next start; --reset begins anew.`,
 				if err != nil {
 					return err
 				}
+				// Somebody's real database is never emptied by a flag.
 				if cfg.DatabaseURL != "" {
 					return usagef("--reset removes the private database only, but DATABASE_URL is set")
 				}
@@ -86,6 +91,8 @@ func serve(ctx context.Context, std stdio, withDemo bool) (err error) {
 	if err != nil {
 		return err
 	}
+	// In this order: the service stops before the store under it closes, and a
+	// private Postgres stops last.
 	defer func() { err = errors.Join(err, db.close()) }()
 	s, err := newService(std, cfg, db)
 	if err != nil {
@@ -116,6 +123,8 @@ func (s *service) prepareDemo(ctx context.Context, std stdio, l net.Listener) er
 	if err != nil {
 		return err
 	}
+	// A campaign that is there is left as it is, whatever its week: people may
+	// have worked in it.
 	if len(list) == 0 {
 		if _, err := s.db.store.ImportCampaign(ctx, demo.Generate(demoSeed, now), "demo"); err != nil {
 			return err
@@ -125,12 +134,14 @@ func (s *service) prepareDemo(ctx context.Context, std stdio, l net.Listener) er
 	if err != nil {
 		return err
 	}
+	// Planned in the background while the first pages are looked at.
 	for _, at := range []time.Time{now, now.AddDate(0, 0, 7)} {
 		h := scheduler.Horizon{From: scheduler.WeekStart(at), To: scheduler.WeekStart(at).AddDate(0, 0, 7)}
 		plans, err := s.db.store.PlansOf(ctx, ref.ID, h, 1)
 		if err != nil {
 			return err
 		}
+		// Planned already, at an earlier start.
 		if len(plans) > 0 {
 			continue
 		}
@@ -151,6 +162,7 @@ const linkLife = 24 * time.Hour
 
 // signInLink is a one-time link for a coordinator, who is made if need be.
 func (s *service) signInLink(ctx context.Context, name string, l net.Listener) (string, error) {
+	// Each start of the demo prints a new link for the same person.
 	p, err := s.db.store.PersonByName(ctx, name)
 	if errors.Is(err, scheduler.ErrNotFound) {
 		p, err = s.db.store.AddPerson(ctx, name, string(auth.RoleCoordinator), nil, "", "demo")
@@ -161,6 +173,8 @@ func (s *service) signInLink(ctx context.Context, name string, l net.Listener) (
 	return oneTimeLink(ctx, s.db.store, p, s.address(l))
 }
 
+// oneTimeLink is a link under an address that signs a person in once. Only the
+// hash of its secret is stored.
 func oneTimeLink(ctx context.Context, st *store.Store, p store.Person, address string) (string, error) {
 	token, err := auth.New(st, false).Link(ctx, p.ID, linkLife)
 	return address + "/sign-in/" + token, err

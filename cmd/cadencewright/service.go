@@ -31,6 +31,8 @@ const databaseName = "postgres"
 // program runs is refused.
 func openDatabase(ctx context.Context, std stdio, cfg config.Config, exclusive bool) (*database, error) {
 	db := &database{}
+	// The private cluster is for one machine and for trying things out; a
+	// service of several copies needs a database that they share.
 	dsn := cfg.DatabaseURL
 	if dsn == "" {
 		c, err := pgembed.Start(ctx, pgembed.Options{Dir: cfg.DataDir, BinDir: cfg.PGBin, Exclusive: exclusive,
@@ -40,6 +42,8 @@ func openDatabase(ctx context.Context, std stdio, cfg config.Config, exclusive b
 		}
 		db.cluster, dsn = c, c.DSN(databaseName)
 	}
+	// Several programs may migrate at once: the database lets one do it and
+	// the others wait.
 	s, err := store.Open(ctx, dsn, store.Options{MaxConns: int32(cfg.MaxConns)})
 	if err == nil {
 		db.store = s
@@ -73,6 +77,8 @@ func readConfig() (config.Config, error) {
 
 // service is the running program.
 type service struct {
+	// The queue makes plans in this program too; several copies of it share one
+	// queue in the database.
 	cfg   config.Config
 	db    *database
 	queue *jobs.Queue
@@ -88,6 +94,8 @@ func newService(std stdio, cfg config.Config, db *database) (*service, error) {
 	if err != nil {
 		return nil, err
 	}
+	// Metrics cost a little with every request, so they are off unless asked
+	// for.
 	var metrics *server.Metrics
 	if cfg.MetricsAddr != "" {
 		metrics = server.NewMetrics(db.store)
@@ -105,6 +113,7 @@ func (s *service) serveMetrics(ctx context.Context) error {
 	if err != nil {
 		return err
 	}
+	// Metrics that cannot be served are no reason to stop planning.
 	go func() {
 		if err := s.http.ServeMetrics(ctx, l); err != nil {
 			s.log.Warn("serving metrics", "error", err)
@@ -118,6 +127,8 @@ func (s *service) serveMetrics(ctx context.Context) error {
 func (s *service) run(ctx context.Context, l net.Listener, before func(context.Context) error) error {
 	ctx, cancel := context.WithCancelCause(ctx)
 	defer cancel(nil)
+	// A private Postgres that ends by itself takes the service with it: nobody
+	// else would start it again.
 	if s.db.cluster != nil && s.db.cluster.Done() != nil {
 		go func() {
 			select {
@@ -130,6 +141,7 @@ func (s *service) run(ctx context.Context, l net.Listener, before func(context.C
 	if err := s.serveMetrics(ctx); err != nil {
 		return err
 	}
+	// Without ctx's end: jobs are handed back in order below, not cut off.
 	if err := s.queue.Start(context.WithoutCancel(ctx)); err != nil {
 		return err
 	}
@@ -148,6 +160,7 @@ func (s *service) run(ctx context.Context, l net.Listener, before func(context.C
 	if err := s.http.Serve(ctx, l, s.cfg.StopAfter); err != nil {
 		return err
 	}
+	// Ctrl-C is a good end; a database that went away is not.
 	if cause := context.Cause(ctx); cause != nil && !errors.Is(cause, context.Canceled) {
 		return cause
 	}
@@ -156,6 +169,7 @@ func (s *service) run(ctx context.Context, l net.Listener, before func(context.C
 
 // address is where people reach the service.
 func (s *service) address(l net.Listener) string {
+	// Behind a proxy the address that is listened on is nobody's to open.
 	if s.cfg.BaseURL != "" {
 		return s.cfg.BaseURL
 	}

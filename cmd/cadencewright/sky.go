@@ -9,6 +9,9 @@ import (
 	"cadencewright/scheduler/almanac"
 )
 
+// skyCommand answers when a source can be observed, by the same limits that
+// planning keeps to: a source that it never shows as up is planned nowhere, but
+// for pins.
 var skyCommand = command{
 	name:  "sky",
 	args:  "[CAMPAIGN.json]",
@@ -44,8 +47,9 @@ compared, without tracks. Times are UTC; edges are good to half a second.`,
 // skyQuestion is what was asked, as it stood on the command line. Source and
 // telescope come from a campaign file, by their names, or from coordinates.
 type skyQuestion struct {
-	source, telescope            string
-	place                        placeFlags
+	source, telescope string
+	place             placeFlags
+	// As they were typed, degrees or with colons; checked when they are used.
 	lon, lat                     string
 	heightM, minElDeg, sunMinDeg float64
 	span                         spanFlags
@@ -60,6 +64,7 @@ func (q *skyQuestion) answer(_ context.Context, std stdio, args []string) error 
 	if err := oneOf("format", q.format, formTable, formCSV, formJSON); err != nil {
 		return err
 	}
+	// The only clock of the answer: "now" on the command line.
 	from, to, err := q.span.parse(time.Now(), 24*time.Hour)
 	if err != nil {
 		return err
@@ -112,6 +117,7 @@ func (q *skyQuestion) subjects(std stdio, args []string) (*scheduler.Source, []*
 	if err != nil {
 		return nil, nil, 0, err
 	}
+	// UT1-UTC is the campaign's: it moves the sky by 15 arcsec a second.
 	telescopes, err := pickTelescopes(c, q.telescope)
 	return src, telescopes, c.DUT1S, err
 }
@@ -138,6 +144,7 @@ func (q *skyQuestion) byCoordinates() (*scheduler.Source, *scheduler.Telescope, 
 	if tel.LatitudeDeg, err = parseAngle("lat", q.lat, false, -90, 90); err != nil {
 		return nil, nil, err
 	}
+	// The ranges of a campaign file, since no file's reader has checked them.
 	for name, v := range map[string][3]float64{"height": {q.heightM, -500, 9000}, "min-el": {q.minElDeg, 0, 90}, "sun-min": {q.sunMinDeg, 0, 180}} {
 		if !(v[0] >= v[1] && v[0] <= v[2]) {
 			return nil, nil, usagef("--%s is %g; allowed is %g to %g", name, v[0], v[1], v[2])

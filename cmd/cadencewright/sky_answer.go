@@ -37,6 +37,7 @@ const (
 // write writes the answer in one of the three forms. The table is put together
 // first, so that an error leaves no half of it.
 func (a *skyAnswer) write(w io.Writer, format string) error {
+	// Only the table is put into words; the other forms hold plain values.
 	switch format {
 	case formCSV:
 		return a.csvRows().writeCSV(w)
@@ -74,6 +75,7 @@ func (s *skySite) describe(b *strings.Builder) error {
 		}
 		up.add(append(line, clockOf(u.StartLSTDeg)+" - "+clockOf(u.EndLSTDeg), fmt.Sprintf("%.1f deg", u.HighestDeg))...)
 	}
+	// Why a source is never up matters more then than a table without lines.
 	if len(up.lines) == 0 {
 		fmt.Fprintf(b, "not up at all; it stands highest at %s UTC, %.1f deg\n", s.visible.Highest.At.Format(minuteLayout), s.visible.Highest.ElDeg)
 	} else if err := up.writeAligned(b); err != nil {
@@ -91,6 +93,8 @@ func (s *skySite) describe(b *strings.Builder) error {
 	}
 	b.WriteString("\n")
 	table := rows{columns: []string{"UTC", "LST", "azimuth", "elevation", "hour angle", "Sun", "up"}}
+	// The causes stand with each sample that is down, all of them, so that it
+	// shows which limit to look at.
 	for _, p := range s.track {
 		mark := "up"
 		if p.Down != 0 {
@@ -107,6 +111,8 @@ func (s *skySite) zone() *time.Location {
 	if s.telescope.Timezone == "" {
 		return nil
 	}
+	// Zones were checked when the campaign was read. If one could not be loaded
+	// all the same, a table without local times is better than none.
 	z, err := s.telescope.Location()
 	if err != nil {
 		return nil
@@ -157,6 +163,8 @@ func (a *skyAnswer) csvRows() *rows {
 		}
 		return r
 	}
+	// up_before and up_after say that the stretch reaches beyond the time that
+	// was asked for.
 	r := &rows{columns: []string{"telescope", "up_from_utc", "up_to_utc", "lst_from_h", "lst_to_h", "highest_deg", "up_before", "up_after"}}
 	for _, s := range a.sites {
 		for _, u := range s.visible.Up {

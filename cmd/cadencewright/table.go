@@ -21,6 +21,7 @@ type rows struct {
 	lines   [][]string
 }
 
+// add appends a line; it has a cell for every column.
 func (r *rows) add(cells ...string) { r.lines = append(r.lines, cells) }
 
 // writeAligned writes the table in columns, for people.
@@ -56,6 +57,7 @@ func plainText(name string) string {
 func writeJSON(w io.Writer, v any) error {
 	e := json.NewEncoder(w)
 	e.SetIndent("", "  ")
+	// No page is made of it, and names with & or < stay readable.
 	e.SetEscapeHTML(false)
 	return e.Encode(v)
 }

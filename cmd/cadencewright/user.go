@@ -15,6 +15,10 @@ import (
 	"cadencewright/server/store"
 )
 
+// userCommand lets people in. There is no sign-up page: an array's people are
+// few and known, and who may reach the database's machine may add them. Running it
+// again for somebody who is there makes a new link, which is also what to do about
+// a forgotten password.
 var userCommand = command{
 	name: "user", args: "NAME", short: "add a person, or make them a new sign-in link",
 	long: `Adds a person with a role, or finds the one of that name, and prints a link that
@@ -55,11 +59,14 @@ observer reports for the telescopes that are named. --list lists everybody.`,
 
 // newUser is what the command line says of a person.
 type newUser struct {
+	// The flags as given; telescopes without blanks and empty codes.
 	name, role string // role empty: not said
 	telescopes []string
 	password   bool
 }
 
+// check reports what does not go together. Only an observer is named for
+// telescopes: a coordinator reports for all, a reader for none.
 func (u *newUser) check() error {
 	if u.role != "" {
 		if err := oneOf("role", u.role, "coordinator", "observer", "reader"); err != nil {
@@ -81,6 +88,8 @@ func (u *newUser) check() error {
 // at before anything is written.
 func (u *newUser) add(ctx context.Context, std stdio, db *database, cfg config.Config) error {
 	hash := ""
+	// Not from a flag: command lines are seen by other users of a machine and
+	// kept in histories.
 	if u.password {
 		line, err := readLine(std.in)
 		if err != nil {
@@ -101,6 +110,7 @@ func (u *newUser) add(ctx context.Context, std stdio, db *database, cfg config.C
 		_, err := fmt.Fprintf(std.out, "the password is set, and all sessions of %s have ended\n", p.Name)
 		return err
 	}
+	// The address that people use is known only from the configuration.
 	address := cfg.BaseURL
 	if address == "" {
 		address = "http://" + cfg.Addr
@@ -116,12 +126,14 @@ func (u *newUser) add(ctx context.Context, std stdio, db *database, cfg config.C
 // find is the person of the name, who is added if there is none.
 func (u *newUser) find(ctx context.Context, std stdio, db *database) (store.Person, error) {
 	p, err := db.store.PersonByName(ctx, u.name)
+	// A role changes what somebody may do and is no side effect of a new link.
 	if err == nil && u.role != "" && u.role != p.Role {
 		return p, fmt.Errorf("%s has the role %s already; the role of somebody who is there does not change this way", p.Name, p.Role)
 	}
 	if !errors.Is(err, scheduler.ErrNotFound) {
 		return p, err
 	}
+	// A mistyped code would leave an observer who can report for nothing.
 	for _, code := range u.telescopes {
 		if err := telescopeThere(ctx, db, code); err != nil {
 			return p, err
@@ -139,6 +151,7 @@ func (u *newUser) find(ctx context.Context, std stdio, db *database) (store.Pers
 
 // telescopeThere makes sure that the live campaign has a telescope.
 func telescopeThere(ctx context.Context, db *database, code string) error {
+	// Live, because control scripts and reports reach no other campaign.
 	ok, err := db.store.HasTelescope(ctx, code)
 	if err == nil && !ok {
 		err = fmt.Errorf("there is no telescope %q in the live campaign", code)
@@ -146,6 +159,8 @@ func telescopeThere(ctx context.Context, db *database, code string) error {
 	return err
 }
 
+// listUsers writes a line a person: role, telescopes, whether there is a
+// password, and who may not sign in any more.
 func listUsers(ctx context.Context, std stdio, db *database) error {
 	people, err := db.store.People(ctx)
 	if err != nil {
@@ -172,6 +187,8 @@ func listUsers(ctx context.Context, std stdio, db *database) error {
 
 // readLine reads one line, such as a password.
 func readLine(r io.Reader) (string, error) {
+	// Far longer than any password that is taken; the end of the input ends
+	// the line too.
 	line, err := bufio.NewReader(io.LimitReader(r, 4096)).ReadString('\n')
 	if err != nil && !errors.Is(err, io.EOF) {
 		return "", fmt.Errorf("standard input: %w", err)

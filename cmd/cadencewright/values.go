@@ -18,6 +18,7 @@ var instantLayouts = []string{time.RFC3339Nano, "2006-01-02T15:04Z07:00", "2006-
 // parseInstant reads the instant of a flag: "now", a date or a date and time.
 func parseInstant(flagName, text string, now time.Time) (time.Time, error) {
 	if text == "now" {
+		// A whole minute, so that tables do not begin at an odd second.
 		return now.UTC().Truncate(time.Minute), nil
 	}
 	for _, layout := range instantLayouts {
@@ -25,6 +26,7 @@ func parseInstant(flagName, text string, now time.Time) (time.Time, error) {
 		if err != nil {
 			continue
 		}
+		// Outside of these years time scales are not tabulated.
 		if t = t.UTC(); t.Before(scheduler.FirstInstant) || !t.Before(scheduler.EndInstant) {
 			return time.Time{}, usagef("--%s %s is outside the years %d to %d", flagName, text,
 				scheduler.FirstInstant.Year(), scheduler.EndInstant.Year()-1)
@@ -67,6 +69,7 @@ func parseAngle(flagName, text string, hours bool, least, most float64) (float64
 	if len(parts) > 3 {
 		return 0, bad
 	}
+	// Only the first part may be 60 or more, and none has a sign of its own.
 	for i, p := range parts {
 		v, err := strconv.ParseFloat(p, 64)
 		if err != nil || !(v >= 0 && v <= 1e4) || (i > 0 && v >= 60) || strings.HasPrefix(p, "+") {
@@ -107,6 +110,7 @@ func sexagesimal(value float64, decimals int, signed bool) string {
 
 // clockOf writes an angle in degrees as hours and minutes, 00:00 to 23:59.
 func clockOf(deg float64) string {
+	// Four minutes to the degree.
 	minutes := int(math.Round(deg*4)) % 1440
 	if minutes < 0 {
 		minutes += 1440

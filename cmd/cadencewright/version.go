@@ -8,6 +8,8 @@ import (
 	"runtime/debug"
 )
 
+// versionCommand prints one line, the same that the service tells in its
+// API's description: what to name in a report of a fault.
 var versionCommand = command{
 	name:  "version",
 	short: "print the version of the program",
@@ -28,6 +30,8 @@ the version of Go and the platform.`,
 // versionLine describes this build.
 func versionLine() string {
 	version, revision, changed := "unknown version", "", ""
+	// What the Go linker knows; a build from a checkout has no version but a
+	// revision.
 	if info, ok := debug.ReadBuildInfo(); ok {
 		if v := info.Main.Version; v != "" && v != "(devel)" {
 			version = v

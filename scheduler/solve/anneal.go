@@ -12,17 +12,18 @@ import (
 // way slides or goes. Changes for the worse are accepted by a temperature.
 type annealer struct {
 	drawer
-	units []int // that any cell can serve
-	score float64
-	top   float64
-	kept  []scan
-	temp  float64
-	tries int64
-	oust  float64
-	floor float64
-	party []*scan
-	reach []float64 // by goal: the most that it could earn
-	crowd int       // a source that may have a scan too many, or -1
+	units  []int // that any cell can serve
+	score  float64
+	top    float64
+	earned float64 // the score of the top
+	kept   []scan
+	temp   float64
+	tries  int64
+	oust   float64
+	floor  float64
+	party  []*scan
+	reach  []float64 // by goal: the most that it could earn
+	crowd  int       // a source that may have a scan too many, or -1
 }
 
 func newAnnealer(s *state, menus []menu, seed uint64) *annealer {
@@ -41,7 +42,7 @@ func newAnnealer(s *state, menus []menu, seed uint64) *annealer {
 }
 
 func (a *annealer) record() {
-	a.top = a.score
+	a.top, a.earned = a.score, a.s.score()
 	a.kept = a.s.copy(a.kept)
 }
 
@@ -75,6 +76,9 @@ func (a *annealer) try() {
 // change is one random change of the plan; it reports which kind, or -1 if it
 // came to nothing.
 func (a *annealer) change() int {
+	if len(a.s.stays) > 0 && a.rng.IntN(4) == 0 {
+		return a.restore()
+	}
 	switch k := a.rng.IntN(100); {
 	case k < 55:
 		return a.want()
@@ -211,8 +215,7 @@ func (a *annealer) standing() *scan {
 
 // again puts a scan in once more at another start, or in another form.
 func (a *annealer) again(x *scan, place, rx, start, steps int) bool {
-	pl := &a.t.p.Blocks[x.block].Places[place]
-	if !pl.Allows(steps, start) {
+	if pl := &a.t.p.Blocks[x.block].Places[place]; start < a.t.first[x.block] || !pl.Allows(steps, start) {
 		return false
 	}
 	y := a.s.fresh()

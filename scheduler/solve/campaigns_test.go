@@ -21,6 +21,11 @@ func problem(t testing.TB, name string) *feasible.Problem {
 	if err != nil {
 		t.Fatal(err)
 	}
+	return problemOf(t, c)
+}
+
+func problemOf(t fataler, c *scheduler.Campaign) *feasible.Problem {
+	t.Helper()
 	p, err := feasible.Build(c, scheduler.Horizon{From: c.Start, To: c.End})
 	if err != nil {
 		t.Fatal(err)

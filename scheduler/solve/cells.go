@@ -45,10 +45,12 @@ func (r *row) at(start int) float64 {
 // worth at most, as section 6 of the planning model defines it.
 type table struct {
 	p       *feasible.Problem
-	goals   []*goal  // by index of the goal; nil: without units
-	flat    []int    // by telescope: its first receiver among all
-	lengths []int    // distinct, in steps, ascending
-	cells   [][]cell // by block
+	goals   []*goal               // by index of the goal; nil: without units
+	flat    []int                 // by telescope: its first receiver among all
+	lengths []int                 // distinct, in steps, ascending
+	cells   [][]cell              // by block
+	first   []int                 // by block: the first step at which a new scan may begin
+	open    [][][]feasible.Length // by block, then place, where first is above 0
 
 	thrift []float64 // by steps of a scan and the least gap after it: how much it is favoured in draws
 
@@ -73,7 +75,8 @@ type beginKey struct {
 }
 
 func newTable(p *feasible.Problem) *table {
-	t := &table{p: p, cells: make([][]cell, len(p.Blocks)), cover: map[coverKey][]bool{}, begin: map[beginKey][]bool{}}
+	t := &table{p: p, cells: make([][]cell, len(p.Blocks)), first: make([]int, len(p.Blocks)),
+		open: make([][][]feasible.Length, len(p.Blocks)), cover: map[coverKey][]bool{}, begin: map[beginKey][]bool{}}
 	n := 0
 	for i := range p.Campaign.Telescopes {
 		t.flat = append(t.flat, n)

@@ -54,17 +54,22 @@ func newMenus(t *table) []menu {
 			}
 			for ri := range c.rows {
 				r := &c.rows[ri]
+				cut := max(0, t.first[bi]-r.from)
+				if cut >= len(r.val) {
+					continue
+				}
+				from, val := r.from+cut, r.val[cut:]
 				m := &menus[r.unit]
 				if n := len(m.refs); n > 0 && m.refs[n-1].block == int32(bi) && m.refs[n-1].cell == int32(ci) {
 					continue // of two options of a pair the first is enough
 				}
-				lo, hi := b.Minute(r.from, t.p.GridMin), b.Minute(r.from+len(r.val)-1+c.steps, t.p.GridMin)
+				lo, hi := b.Minute(from, t.p.GridMin), b.Minute(from+len(val)-1+c.steps, t.p.GridMin)
 				if n := len(m.blocks); n == 0 || m.blocks[n-1].block != bi {
 					m.blocks = append(m.blocks, blockRefs{bi, len(m.refs), len(m.refs), lo, hi})
 				}
 				br := &m.blocks[len(m.blocks)-1]
 				m.top = max(m.top, r.max*float64(t.p.Units.Units[r.unit].Cap)/float64(r.load))
-				m.refs = append(m.refs, cellRef{int32(bi), int32(ci), int32(c.steps), int32(c.steps + b.MinGap), int32(r.from), r.val})
+				m.refs = append(m.refs, cellRef{int32(bi), int32(ci), int32(c.steps), int32(c.steps + b.MinGap), int32(from), val})
 				br.to++
 				br.earliest, br.latest = min(br.earliest, lo), max(br.latest, hi)
 			}

@@ -20,6 +20,7 @@ type pricing struct {
 	tight   float64    // weight of the distance from best
 	stuck   int
 	over    bool
+	seeded  bool // the first prices are those of an earlier plan
 	master  master
 }
 
@@ -45,6 +46,16 @@ func newPricing(d *dual) *pricing {
 	}
 	p.master.p = p
 	return p
+}
+
+// seed takes the prices of an earlier plan to begin with, where it has any: for
+// a plan that changes little they prove nearly as much as the best.
+func (p *pricing) seed(prices map[string]float64) {
+	if p.seeded = len(prices) > 0; p.seeded {
+		for i := range p.price {
+			p.price[i] = max(0, prices[p.d.t.p.Units.Units[i].Name])
+		}
+	}
 }
 
 // Columns that have not been wanted for so many steps are forgotten.

@@ -15,6 +15,8 @@ import (
 type run struct {
 	o      Options
 	t      *table
+	start  *state
+	stages []stage
 	menus  []menu
 	prices *pricing
 	priced chan struct{} // closed when the bound is as low as it will be
@@ -24,15 +26,30 @@ type run struct {
 
 	mu    sync.Mutex // guards what follows
 	top   float64    // the best total so far
+	score float64    // its score
 	bound float64
 	told  Progress
 }
 
-func newRun(p *feasible.Problem, o Options) *run {
+func newRun(p *feasible.Problem, o Options) (*run, error) {
 	r := &run{o: o, t: newTable(p), top: math.Inf(-1), bound: math.Inf(1), priced: make(chan struct{})}
+	r.stages = stages
+	if o.Replan != nil {
+		r.stages = restages
+		r.t.closeBefore(o.Replan.At)
+	}
+	r.start = newState(r.t)
+	if o.Replan != nil {
+		if err := r.start.takeUp(o.Replan); err != nil {
+			return nil, err
+		}
+	}
 	r.menus = newMenus(r.t)
 	r.prices = newPricing(newDual(r.t, o.Workers))
-	return r
+	if o.Replan != nil {
+		r.prices.seed(o.Replan.From.Certificate.Prices)
+	}
+	return r, nil
 }
 
 // stage is one round of annealing: from each of the best plans of the round
@@ -56,11 +73,18 @@ var stages = []stage{
 	{1, 1, 0.07, 0.02, 0.001},
 }
 
+// restages are those of a plan under way, which is to change little.
+var restages = []stage{
+	{1, 1, 0.20, 0.02, 0.002},
+	{1, 2, 0.60, 0.06, 0.002},
+	{1, 1, 0.20, 0.004, 0.0005},
+}
+
 // search runs all stages, and the pricing beside them, and returns the scans of
 // the best plan. Of several equally good ones the stages' ranking picks one, not
 // which worker came first.
 func (r *run) search() []scan {
-	first := newAnnealer(newState(r.t), r.menus, r.o.Seed)
+	first := newAnnealer(r.start, r.menus, r.o.Seed)
 	r.offer(first)
 	if r.o.Workers > 1 {
 		go r.lower()
@@ -68,7 +92,7 @@ func (r *run) search() []scan {
 	}
 	pool := []found{{first.top, first.kept}}
 	empty := pool[:1:1]
-	for si, st := range stages {
+	for si, st := range r.stages {
 		if len(first.units) == 0 || r.stop() && si > 0 {
 			break
 		}
@@ -106,6 +130,7 @@ func (r *run) stage(si int, st stage, from, had []found) []found {
 		wg.Go(func() {
 			for i := range next {
 				s := newState(r.t)
+				s.bonus, s.stays = r.start.bonus, r.start.stays
 				s.resume(from[i/st.chains].scans)
 				chains[i] = newAnnealer(s, r.menus, mix(r.o.Seed, uint64(si*64+i)))
 				r.anneal(chains[i], st, n, waves[i/min(r.o.Workers, n)])
@@ -145,12 +170,12 @@ type found struct {
 // the parts of the time allowed by which each round of workers is to be done.
 func (r *run) waves(si, n int) []float64 {
 	before := 0.0
-	for _, st := range stages[:si] {
+	for _, st := range r.stages[:si] {
 		before += st.part
 	}
 	list := make([]float64, (n-1)/min(r.o.Workers, n)+1)
 	for i := range list {
-		list[i] = before + stages[si].part*float64(i+1)/float64(len(list))
+		list[i] = before + r.stages[si].part*float64(i+1)/float64(len(list))
 	}
 	return list
 }
@@ -214,7 +239,7 @@ func (r *run) lower() {
 		r.bound = r.prices.bound
 		r.mu.Unlock()
 		r.report()
-		if r.prices.done() || r.stop() {
+		if r.o.Replan != nil && r.prices.seeded || r.prices.done() || r.stop() {
 			return
 		}
 	}
@@ -224,7 +249,9 @@ func (r *run) lower() {
 func (r *run) offer(a *annealer) {
 	r.mu.Lock()
 	better := a.top > r.top
-	r.top = max(r.top, a.top)
+	if better {
+		r.top, r.score = a.top, a.earned
+	}
 	r.mu.Unlock()
 	if better {
 		r.report()
@@ -238,7 +265,7 @@ func (r *run) report() {
 	}
 	r.mu.Lock()
 	defer r.mu.Unlock()
-	p := Progress{Effort: r.tries() / 1000, Of: r.o.Effort, Score: math.Max(0, r.top), Bound: r.bound}
+	p := Progress{Effort: r.tries() / 1000, Of: r.o.Effort, Score: r.score, Bound: r.bound}
 	if p.Score != r.told.Score || p.Bound != r.told.Bound {
 		r.told = p
 		r.o.Progress(p)
@@ -249,5 +276,5 @@ func (r *run) report() {
 func (r *run) proven() bool {
 	r.mu.Lock()
 	defer r.mu.Unlock()
-	return r.top >= r.bound*(1-provenGap)
+	return r.score >= r.bound*(1-provenGap)
 }

@@ -33,9 +33,10 @@ func (t *table) fill(x *scan, bi, place, rx, start, steps int) {
 	pl := &b.Places[place]
 	*x = scan{block: bi, place: place, rx: rx, steps: steps, pin: -1, source: pl.Source, tel: b.Telescope,
 		receiver: b.Receivers[rx], flat: t.flat[b.Telescope] + b.Receivers[rx]}
-	for i := range pl.Lengths {
-		if pl.Lengths[i].Steps == steps {
-			x.runs = pl.Lengths[i].Runs
+	lengths := t.lengthsOf(bi, place)
+	for i := range lengths {
+		if lengths[i].Steps == steps {
+			x.runs = lengths[i].Runs
 		}
 	}
 	t.time(x, start)

@@ -32,6 +32,8 @@ type Options struct {
 	// cools down by it where the effort is not spent sooner, and ends at 1. It
 	// is asked as Stop is, and the plan then depends on the clock likewise.
 	Pace func() float64
+	// Replan, if set, starts from a plan that is under way.
+	Replan *Replan
 	// Progress, if set, is told of better plans and bounds, by one goroutine at
 	// a time.
 	Progress func(Progress)
@@ -75,9 +77,15 @@ const provenGap = 1e-6
 func Solve(p *feasible.Problem, o Options) (*Result, error) {
 	if o.Effort <= 0 {
 		o.Effort = DefaultEffort(p)
+		if o.Replan != nil {
+			o.Effort = max(o.Effort/75, 60)
+		}
 	}
 	o.Workers = max(1, o.Workers)
-	r := newRun(p, o)
+	r, err := newRun(p, o)
+	if err != nil {
+		return nil, err
+	}
 	best := r.search()
 	status := EffortSpent
 	switch {

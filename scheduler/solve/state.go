@@ -17,6 +17,7 @@ type state struct {
 	value  []float64 // by source: earned, bonuses and the cost of its time
 	earn   earner
 	bonus  map[scanKey]float64 // of scans that an earlier plan holds; may be nil
+	stays  []scan              // those, in the order of that plan
 
 	// The proposal under way.
 	log     []change
@@ -92,6 +93,15 @@ func newState(t *table) *state {
 func (s *state) total() float64 {
 	total := 0.0
 	for _, v := range s.value {
+		total += v
+	}
+	return total
+}
+
+// score is what the plan earns.
+func (s *state) score() float64 {
+	total := 0.0
+	for _, v := range s.earned {
 		total += v
 	}
 	return total

@@ -44,6 +44,7 @@ func wanted() *scheduler.Campaign {
 func TestNoOtherWayEarnsMore(t *testing.T) {
 	c := wanted()
 	base := started(t, c)
+	earning := map[scheduler.GoalKind]int{}
 	rapid.Check(t, func(t *rapid.T) {
 		var changes []Change
 		for range rapid.IntRange(1, 5).Draw(t, "scans") {
@@ -64,11 +65,19 @@ func TestNoOtherWayEarnsMore(t *testing.T) {
 					got += a.value
 				}
 			}
+			if got > 0 {
+				earning[g.Kind]++
+			}
 			if want := exhaust(base, g, scans); math.Abs(got-want) > 1e-9 {
 				t.Errorf("goal %s earns %.6f from %v, and could earn %.6f", g.ID, got, changes, want)
 			}
 		}
 	})
+	for _, kind := range []scheduler.GoalKind{scheduler.KindCadence, scheduler.KindPhase, scheduler.KindOverlap, scheduler.KindBandPair} {
+		if earning[kind] == 0 {
+			t.Errorf("nothing earned from a goal of kind %s", kind)
+		}
+	}
 }
 
 // exhaust is the most that scans can earn from a goal, by trying every way to

@@ -11,7 +11,9 @@ import (
 
 // Every rule, each by the one change that breaks it, with its figures.
 func TestWhatAChangeBreaks(t *testing.T) {
-	add := func(source string, minute float64, minutes int) Change { return Add("b1", source, "L", after(minute), minutes) }
+	add := func(source string, minute float64, minutes int) Change {
+		return Add("b1", source, "L", after(minute), minutes)
+	}
 	for _, x := range []struct {
 		name    string
 		adapt   func(*scheduler.Campaign)
@@ -150,7 +152,7 @@ func TestChangesThatMakeNoSense(t *testing.T) {
 		{"not in the campaign", []Change{Add("b1", "SIM J0000+0000", "L", after(100), 20)}},
 		{"not one of telescope ONE", []Change{Add("b1", high, "X", after(100), 20)}},
 		{"a scan takes from 1 min", []Change{Add("b1", high, "L", after(100), 0)}},
-		{"a scan takes from 1 min", []Change{Resize(0, 1 << 40)}},
+		{"a scan takes from 1 min", []Change{Resize(0, 1<<40)}},
 		{"more than a day outside block b1", []Change{Move(0, after(-1500))}},
 		{"drop it and add another", []Change{{Op: OpAlter, Scan: 0, Source: other}}},
 		{"must be add, alter", []Change{{Op: "swap"}}},

@@ -81,7 +81,7 @@ func (p *Planner) make(ctx context.Context, job store.PlanJob) (*scheduler.Plan,
 		return nil, store.PlanMeta{}, err
 	}
 	result.Plan.Unmet = explain.Unmet(problem, result.Plan)
-	if err := recheck(c, result.Plan); err != nil {
+	if err := p.recheck(ctx, c, result.Plan); err != nil {
 		return nil, store.PlanMeta{}, err
 	}
 	return result.Plan, store.PlanMeta{CampaignRevision: ref.Revision, Seed: job.Seed, Effort: result.Effort, Status: string(result.Status), Job: job.ID}, nil
@@ -151,9 +151,13 @@ func (p *Planner) tell(ctx context.Context, job int64, latest *atomic.Pointer[so
 }
 
 // recheck refuses a plan that breaks a rule: a fault of the planner must not
-// reach a telescope.
-func recheck(c *scheduler.Campaign, p *scheduler.Plan) error {
-	report, err := verify.Check(c, p, verify.Options{})
+// reach a telescope. A job that is wanted to stop is re-checked all the same;
+// only the end of ctx ends that too.
+func (p *Planner) recheck(ctx context.Context, c *scheduler.Campaign, plan *scheduler.Plan) error {
+	report, err := verify.Check(c, plan, verify.Options{Workers: p.Workers, Stop: func() bool { return ctx.Err() != nil }})
+	if errors.Is(err, verify.ErrStopped) {
+		return ctx.Err()
+	}
 	if err != nil {
 		return err
 	}

@@ -166,8 +166,8 @@ func TestRecheckRefuses(t *testing.T) {
 	if err := f.run(t, 20); err != nil {
 		t.Fatal(err)
 	}
-	p := f.saved
-	if err := recheck(f.campaign, p); err != nil {
+	p, planner := f.saved, &Planner{Workers: 2}
+	if err := planner.recheck(t.Context(), f.campaign, p); err != nil {
 		t.Fatal(err)
 	}
 	for name, spoil := range map[string]func(){
@@ -177,14 +177,20 @@ func TestRecheckRefuses(t *testing.T) {
 	} {
 		kept, scans := *p, append([]scheduler.Scan(nil), p.Scans...)
 		spoil()
-		if err := recheck(f.campaign, p); err == nil || !strings.Contains(err.Error(), "a fault of the program") {
+		if err := planner.recheck(t.Context(), f.campaign, p); err == nil || !strings.Contains(err.Error(), "a fault of the program") {
 			t.Errorf("%s: %v", name, err)
 		}
 		*p = kept
 		p.Scans = scans
 	}
 	p.Campaign = "another"
-	if err := recheck(f.campaign, p); err == nil {
+	if err := planner.recheck(t.Context(), f.campaign, p); err == nil {
 		t.Error("a plan of another campaign passes")
+	}
+	p.Campaign = f.campaign.Name
+	down, cancel := context.WithCancel(t.Context())
+	cancel()
+	if err := planner.recheck(down, f.campaign, p); !errors.Is(err, context.Canceled) {
+		t.Errorf("a program that goes down: %v", err)
 	}
 }

@@ -15,7 +15,7 @@ type horizonFlags struct{ week, from, to string }
 // declare adds the flags to a command's.
 func (h *horizonFlags) declare(flags *flag.FlagSet) {
 	flags.StringVar(&h.week, "week", "", "ISO `WEEK` to plan, such as 2027-W03; that of the campaign's first block if left out")
-	flags.StringVar(&h.from, "from", "", "`START` of another stretch of time to plan: 2027-01-18 or 2027-01-18T12:00Z")
+	flags.StringVar(&h.from, "from", "", "`START` of another stretch of time to plan: 2027-01-18 or 2027-01-18T12:00Z; with --at, the file of a plan")
 	flags.StringVar(&h.to, "to", "", "`END` of it, excluded; a week after --from if left out")
 }
 

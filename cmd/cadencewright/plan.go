@@ -10,6 +10,7 @@ import (
 	"time"
 
 	"cadencewright/scheduler"
+	"cadencewright/scheduler/compare"
 	"cadencewright/scheduler/explain"
 	"cadencewright/scheduler/feasible"
 	"cadencewright/scheduler/solve"
@@ -30,15 +31,22 @@ whole or not at all. The same campaign, seed and effort give the same plan, to
 the byte; with --seconds the clock decides how far the search goes. Ctrl-C ends
 the search and keeps the best plan found so far; a second one ends the program.
 Where the time is over or Ctrl-C comes before a search could begin, there is no
-plan to keep: that is said, nothing is written, and the exit code is 1.`,
+plan to keep: that is said, nothing is written, and the exit code is 1.
+
+With --at, a plan that is under way is planned again: --from names its file.
+Scans that began before stay as they are, unless their block has lost that time
+by now; later ones change only where that earns more than --stability each.`,
 	examples: []string{
 		"cadencewright plan campaign.json --week 2027-W03 --out plan.json",
 		"cadencewright plan campaign.json --from 2027-01-18 --to 2027-02-01 --seconds 60 --out plan.json",
 		"cadencewright plan campaign.json --effort 50000 --seed 7 > plan.json",
+		"cadencewright plan campaign.json --from plan.json --at 2027-01-20T06:00Z --out plan2.json",
 	},
 	setup: func(flags *flag.FlagSet) action {
 		q := &planQuestion{}
 		q.horizon.declare(flags)
+		flags.StringVar(&q.at, "at", "", "plan again: `INSTANT` before which the scans of the plan that --from names stay as they are")
+		flags.Float64Var(&q.stability, "stability", solve.DefaultStability, "with --at, `WORTH` of each later scan that stays unchanged")
 		flags.StringVar(&q.out, "out", "-", "`FILE` to write the plan to; - is standard output")
 		flags.Int64Var(&q.effort, "effort", 0, "how much to search, in thousands of changes `TRIED`; if left out, what suits the number of units")
 		// Time is a limit and never a reason for another plan by itself: who
@@ -53,13 +61,15 @@ plan to keep: that is said, nothing is written, and the exit code is 1.`,
 
 // planQuestion is what was asked, as it stood on the command line.
 type planQuestion struct {
-	horizon horizonFlags
-	out     string  // a file, or - for standard output
-	effort  int64   // thousands of steps; 0: the solver's own, or none where seconds are given
-	seconds float64 // 0: no limit of time
-	seed    uint64
-	workers int
-	quiet   bool
+	horizon   horizonFlags
+	at        string // with it, horizon.from names a plan's file
+	stability float64
+	out       string  // a file, or - for standard output
+	effort    int64   // thousands of steps; 0: the solver's own, or none where seconds are given
+	seconds   float64 // 0: no limit of time
+	seed      uint64
+	workers   int
+	quiet     bool
 }
 
 // endlessEffort is more than any search spends before its time is up.
@@ -72,6 +82,8 @@ func (q *planQuestion) check() error {
 		return usagef("--effort is %d; allowed is 1 to %d, in thousands of changes tried", q.effort, int64(endlessEffort))
 	case !(q.seconds >= 0 && q.seconds <= 7*86400):
 		return usagef("--seconds is %g; allowed is up to a week, 604800", q.seconds)
+	case !(q.stability >= 0 && q.stability <= 1000):
+		return usagef("--stability is %g; allowed is 0 to 1000", q.stability)
 	case q.workers < 1 || q.workers > 1024:
 		return usagef("--workers is %d; allowed is 1 to 1024", q.workers)
 	}
@@ -91,7 +103,7 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 	if err != nil {
 		return err
 	}
-	h, err := q.horizon.horizon(c)
+	again, h, err := q.start(std, c)
 	if err != nil {
 		return err
 	}
@@ -112,7 +124,7 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 		return err
 	}
 	defer out.discard()
-	result, err := q.search(ctx, std, problem, started)
+	result, err := q.search(ctx, std, problem, again, started)
 	if err != nil {
 		return err
 	}
@@ -130,6 +142,9 @@ func (q *planQuestion) run(ctx context.Context, std stdio, args []string) error 
 	}
 	if !q.quiet {
 		fmt.Fprint(std.err, planSummary(problem, result, time.Since(started)))
+		if again != nil {
+			fmt.Fprint(std.err, changesText(compare.Plans(again.From, result.Plan, again.At)))
+		}
 	}
 	return nil
 }
@@ -150,7 +165,7 @@ func (q *planQuestion) prepare(ctx context.Context, c *scheduler.Campaign, h sch
 
 // search looks for a plan until the effort or the time is spent or the context
 // ends; started is when the time began to count.
-func (q *planQuestion) search(ctx context.Context, std stdio, problem *feasible.Problem, started time.Time) (*solve.Result, error) {
+func (q *planQuestion) search(ctx context.Context, std stdio, problem *feasible.Problem, again *solve.Replan, started time.Time) (*solve.Result, error) {
 	line := &progressLine{now: time.Now}
 	if !q.quiet {
 		line = newProgressLine(std.err)
@@ -162,7 +177,7 @@ func (q *planQuestion) search(ctx context.Context, std stdio, problem *feasible.
 		effort = endlessEffort
 	}
 	return solve.Solve(problem, solve.Options{
-		Seed: q.seed, Effort: effort, Workers: q.workers,
+		Seed: q.seed, Effort: effort, Workers: q.workers, Replan: again,
 		Stop:     func() bool { return ctx.Err() != nil },
 		Pace:     pace(started, q.seconds),
 		Progress: func(p solve.Progress) { line.show(p.Effort, p.Score, known(p.Bound)) },

@@ -32,6 +32,9 @@ type Options struct {
 	// cools down by it where the effort is not spent sooner, and ends at 1. It
 	// is asked as Stop is, and the plan then depends on the clock likewise.
 	Pace func() float64
+	// LeaveIdle leaves time free that earns nothing, instead of lengthening
+	// scans and adding extra ones.
+	LeaveIdle bool
 	// Replan, if set, starts from a plan that is under way.
 	Replan *Replan
 	// Progress, if set, is told of better plans and bounds, by one goroutine at
@@ -96,6 +99,9 @@ func Solve(p *feasible.Problem, o Options) (*Result, error) {
 	}
 	s := newState(r.t)
 	s.resume(best)
+	if !o.LeaveIdle {
+		s.fillIdle()
+	}
 	return &Result{Plan: s.plan(r.prices.best, r.prices.bound), Status: status, Effort: r.tries() / 1000}, nil
 }
 

@@ -108,6 +108,9 @@ func (q *question) outsideWindow(b *feasible.Block, lo, hi float64) {
 
 // notUp says why no scan is possible in a block at all.
 func (q *question) notUp(bi int) {
+	if q.toll != nil {
+		return // asked what would be possible, not why something is not
+	}
 	b := &q.Blocks[bi]
 	r, t := q.rejects[bi][q.goal.Source], q.telescope(b)
 	// The planner's counts are by the first limit that an instant fails, in the

@@ -29,6 +29,9 @@ func (c *choice) consider(gain float64, options ...*option) {
 	if gain < c.net {
 		return // cannot be better, whatever it costs
 	}
+	if c.q.toll != nil && len(options) == 1 && gain-c.q.toll(options[0]) < c.net {
+		return
+	}
 	var displaced []*planned
 	for _, o := range options {
 		list, ok := c.q.cost(o)
@@ -48,6 +51,9 @@ func (c *choice) consider(gain float64, options ...*option) {
 		}
 	}
 	net := gain - c.q.loss(displaced)
+	for _, o := range options {
+		net -= o.toll
+	}
 	moves := len(displaced) // and scans to add: of equal choices, the one that changes least
 	for _, o := range options {
 		if o.had == nil {

@@ -174,3 +174,17 @@ func BenchmarkUnmetLarge(b *testing.B) {
 		}
 	}
 }
+
+// A plan after little search, with changes of the campaign looked for.
+func BenchmarkUnmetPlanned(b *testing.B) {
+	for _, name := range []string{"medium-2", "hard-1", "large-1", "demo"} {
+		p, plan := problemOf(b, name), planOf(b, name)
+		b.Run(name, func(b *testing.B) {
+			n := 0
+			for b.Loop() {
+				n = len(Unmet(p, plan))
+			}
+			b.ReportMetric(float64(n), "unmet")
+		})
+	}
+}

@@ -14,6 +14,7 @@
 package explain
 
 import (
+	"cmp"
 	"slices"
 
 	"cadencewright/scheduler"
@@ -24,6 +25,7 @@ import (
 // The causes, from the furthest from a scan to the nearest. Reasons of a unit
 // come in the opposite order: what is nearest to being met first.
 const (
+	Suggested     scheduler.ReasonCode = "suggestion"     // no cause, but a change that would meet it; comes last
 	NoBlock       scheduler.ReasonCode = "no_block"       // no telescope that may serve it has a block
 	NoReceiver    scheduler.ReasonCode = "no_receiver"    // blocks have no receiver of a wanted band
 	NotDetectable scheduler.ReasonCode = "not_detectable" // the pulse is too broad to be seen
@@ -48,7 +50,7 @@ const (
 // stages is the order of the causes.
 var stages = func() map[scheduler.ReasonCode]int {
 	order := map[scheduler.ReasonCode]int{}
-	for i, code := range []scheduler.ReasonCode{NoBlock, NoReceiver, NotDetectable, OutsideWindow, TooLow, TooHigh, NearSun, OffMount,
+	for i, code := range []scheduler.ReasonCode{Suggested, NoBlock, NoReceiver, NotDetectable, OutsideWindow, TooLow, TooHigh, NearSun, OffMount,
 		TooShort, NoTime, CableWrap, Precision, NoPassage, Phase, NoOverlap, NoPair, TooClose, Displaced, Fits} {
 		order[code] = i
 	}
@@ -56,18 +58,53 @@ var stages = func() map[scheduler.ReasonCode]int {
 }()
 
 // Unmet lists the units that the plan earns fewer times than it could, in the
-// order of the problem's units, each with its reasons. Scans and earnings of
-// the plan that do not belong to the problem count for nothing.
+// order of the problem's units, each with its reasons and then up to three
+// changes that would meet it. Scans and earnings of the plan that do not belong
+// to the problem count for nothing. Where very many units are unmet, changes of
+// the campaign are looked for only for those that weigh most; Suggest has them
+// for each.
 func Unmet(p *feasible.Problem, plan *scheduler.Plan) []scheduler.Unmet {
 	e := newExplainer(p, plan)
+	a := e.newAdviser()
+	deep := e.weightiest(mostExplored)
 	var list []scheduler.Unmet
 	for ui := range p.Units.Units {
 		u := &p.Units.Units[ui]
-		if e.times(ui) < u.N {
-			list = append(list, scheduler.Unmet{Goal: p.Units.Goals[u.Goal].ID, Unit: u.Name, Weight: u.Weight, Reasons: e.reasons(ui)})
+		if e.times(ui) >= u.N {
+			continue
 		}
+		q := e.question(ui)
+		q.look()
+		reasons := q.summary()
+		for _, s := range a.suggest(q, mostReasons, deep[ui]) {
+			if s.Kind != Insert { // the reason says so already
+				reasons = append(reasons, scheduler.Reason{Code: Suggested, Text: s.Text})
+			}
+		}
+		list = append(list, scheduler.Unmet{Goal: p.Units.Goals[u.Goal].ID, Unit: u.Name, Weight: u.Weight, Reasons: reasons})
 	}
 	return list
+}
+
+const (
+	mostReasons  = 3  // suggestions for one unit in a plan
+	mostExplored = 60 // units for which changes of the campaign are looked for
+)
+
+// weightiest are the unmet units that weigh most.
+func (e *explainer) weightiest(most int) map[int]bool {
+	var list []int
+	for ui := range e.Units.Units {
+		if e.times(ui) < e.Units.Units[ui].N {
+			list = append(list, ui)
+		}
+	}
+	slices.SortStableFunc(list, func(a, b int) int { return cmp.Compare(e.Units.Units[b].Weight, e.Units.Units[a].Weight) })
+	chosen := map[int]bool{}
+	for _, ui := range list[:min(most, len(list))] {
+		chosen[ui] = true
+	}
+	return chosen
 }
 
 // explainer is a problem and a plan for it, put on the problem's blocks and
@@ -79,6 +116,12 @@ type explainer struct {
 	earners [][]*planned               // by unit
 	total   []float64                  // by unit: what the plan earns from it
 	rejects []map[int]*feasible.Reject // by block: source → why it is not up
+	plan    *scheduler.Plan
+
+	// toll, where the problem is of a campaign that is otherwise than the real
+	// one, says what an option owes to that: it is taken off what it gains. Nil:
+	// nothing is otherwise.
+	toll func(o *option) float64
 }
 
 // times is how often a unit is earned.
@@ -99,13 +142,6 @@ type finding struct {
 	near  float64                // the larger, the nearer to being met
 	text  func(count int) string // of all findings with this code together
 	whole bool                   // about the unit as a whole, not about a block
-}
-
-// reasons are the causes of one unit, the nearest to being met first.
-func (e *explainer) reasons(ui int) []scheduler.Reason {
-	q := e.question(ui)
-	q.look()
-	return q.summary()
 }
 
 // look finds all there is to say about the unit.

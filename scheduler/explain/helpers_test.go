@@ -1,6 +1,7 @@
 package explain
 
 import (
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -75,7 +76,8 @@ func earning(unit string, value float64) scheduler.Earning {
 	return scheduler.Earning{Goal: goal, Unit: unit, Value: value}
 }
 
-// explained are the reasons for a unit under a plan of the given scans.
+// explained are the causes for a unit under a plan of the given scans, without
+// suggestions.
 func explained(t *testing.T, c *scheduler.Campaign, unit string, scans ...scheduler.Scan) []scheduler.Reason {
 	t.Helper()
 	if err := c.Validate(); err != nil {
@@ -87,7 +89,7 @@ func explained(t *testing.T, c *scheduler.Campaign, unit string, scans ...schedu
 	}
 	for _, u := range Unmet(p, &scheduler.Plan{Campaign: c.Name, From: c.Start, To: c.End, Scans: scans}) {
 		if u.Unit == unit {
-			return u.Reasons
+			return slices.DeleteFunc(u.Reasons, func(r scheduler.Reason) bool { return r.Code == Suggested })
 		}
 	}
 	t.Fatalf("%s is not among the unmet units", unit)

@@ -19,6 +19,7 @@ type option struct {
 
 	had      *planned // it stands in the plan already
 	turnsDeg float64  // whole turns of the azimuth drive that cost least; set by cost
+	toll     float64  // of what must be otherwise for it, set by cost; see explainer.toll
 }
 
 // reach is a block, receiver and time in which scans of a unit's source can
@@ -104,6 +105,10 @@ func (e *explainer) cost(o *option) (displaced []*planned, possible bool) {
 			displaced, best, possible = list, loss, true
 			o.turnsDeg = 360 * float64(turn)
 		}
+	}
+	if e.toll != nil { // what is otherwise than it is must do without displacing anything
+		o.toll = e.toll(o)
+		possible = possible && len(displaced) == 0 && !math.IsInf(o.toll, 1)
 	}
 	return displaced, possible
 }

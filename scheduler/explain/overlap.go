@@ -163,7 +163,7 @@ func (q *question) cheapest(list []reach, at float64, bit uint32) []*option {
 		if !ok {
 			return
 		}
-		t, loss := q.Blocks[o.block].Telescope, q.loss(displaced)
+		t, loss := q.Blocks[o.block].Telescope, q.loss(displaced)+o.toll
 		if p, seen := byTelescope[t]; !seen || loss < p.loss {
 			byTelescope[t] = priced{&o, loss}
 		}

@@ -50,7 +50,7 @@ func (q *question) offers(list []reach, bit uint32) []offered {
 	var out []offered
 	add := func(o option) {
 		if displaced, ok := q.cost(&o); ok {
-			out = append(out, offered{o, q.loss(displaced)})
+			out = append(out, offered{o, q.loss(displaced) + o.toll})
 		}
 	}
 	for _, r := range list {

@@ -26,7 +26,7 @@ type planned struct {
 type pose struct{ axis1, axis2 float64 }
 
 func newExplainer(p *feasible.Problem, plan *scheduler.Plan) *explainer {
-	e := &explainer{Problem: p, index: scheduler.NewIndex(p.Campaign), planned: make([][]*planned, len(p.Blocks)),
+	e := &explainer{Problem: p, plan: plan, index: scheduler.NewIndex(p.Campaign), planned: make([][]*planned, len(p.Blocks)),
 		earners: make([][]*planned, len(p.Units.Units)), total: make([]float64, len(p.Units.Units))}
 	byID := map[string]int{}
 	for i := range p.Blocks {

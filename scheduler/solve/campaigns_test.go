@@ -98,21 +98,3 @@ func TestStopAtOnce(t *testing.T) {
 		t.Errorf("score %g, bound %g", r.Plan.Score, r.Plan.Bound)
 	}
 }
-
-func BenchmarkSolve(b *testing.B) {
-	for _, c := range campaigns {
-		b.Run(c.name, func(b *testing.B) {
-			p := problem(b, c.name)
-			for b.Loop() {
-				r, err := solve.Solve(p, solve.Options{Seed: 1, Effort: 1000, Workers: 1})
-				if err != nil {
-					b.Fatal(err)
-				}
-				if r.Plan.Score < c.baseline*0.9 || len(r.Plan.Scans) == 0 {
-					b.Fatalf("score %.3f is not that of a plan", r.Plan.Score)
-				}
-				b.ReportMetric(r.Plan.Score, "score")
-			}
-		})
-	}
-}

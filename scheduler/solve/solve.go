@@ -67,10 +67,12 @@ type Result struct {
 	Effort int64 // thousands of changes tried
 }
 
-// DefaultEffort is how much search suits a horizon: more for more units, some
-// seconds for a week of a few telescopes.
+// DefaultEffort is how much search suits a horizon: more for more units, and
+// more where more of them compete for each block; some seconds for a week of a
+// few telescopes.
 func DefaultEffort(p *feasible.Problem) int64 {
-	return int64(min(max(len(p.Units.Units)*25, 1500), 100_000))
+	n := float64(len(p.Units.Units))
+	return int64(min(max(4.5*n*n/float64(max(1, len(p.Blocks))), 1500), 100_000))
 }
 
 // provenGap is the relative gap below which a plan counts as the best there is.

@@ -83,6 +83,8 @@ func (q *question) helps(k Kind) bool {
 		return slices.ContainsFunc(q.findings, func(f finding) bool { return slices.Contains(codes, f.code) })
 	}
 	switch k {
+	case Receiver:
+		return any(NoReceiver)
 	case ScanLength:
 		return any(TooShort, NoTime, CableWrap, Precision, Phase, NoOverlap, NoPair, OffMount, Displaced)
 	case LowerLimit:

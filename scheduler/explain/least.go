@@ -3,6 +3,7 @@ package explain
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 	"time"
 
@@ -25,6 +26,8 @@ func (w *world) least(found *question) (Suggestion, bool) {
 		return Suggestion{}, false
 	}
 	switch w.kind {
+	case Receiver:
+		return w.leastReceiver(owing)
 	case ScanLength:
 		return w.leastLength(owing)
 	case LowerLimit:
@@ -32,10 +35,22 @@ func (w *world) least(found *question) (Suggestion, bool) {
 	case LongerBlock:
 		return w.leastBlock(owing)
 	}
-	if len(owing) > 1 {
-		return Suggestion{}, false
+	for _, o := range owing {
+		if o.block != owing[0].block {
+			return Suggestion{}, false
+		}
 	}
-	return w.newBlock(found, owing[0])
+	return w.newBlock(found, owing)
+}
+
+func (w *world) leastReceiver(owing []*option) (Suggestion, bool) {
+	for _, o := range owing {
+		if o.block != owing[0].block || o.receiver != owing[0].receiver {
+			return Suggestion{}, false
+		}
+	}
+	b := w.blockOf(owing[0])
+	return Suggestion{Telescope: b.Telescope, Block: b.ID, Receivers: []string{w.receiverOf(owing[0])}}, true
 }
 
 func (w *world) leastLength(owing []*option) (Suggestion, bool) {
@@ -75,15 +90,23 @@ func (w *world) leastBlock(owing []*option) (Suggestion, bool) {
 
 func wholeMinutes(m float64) time.Duration { return time.Duration(m) * time.Minute }
 
-// newBlock is a block for one scan, and where else in sidereal time it could be.
-func (w *world) newBlock(found *question, o *option) (Suggestion, bool) {
+// newBlock is a block for the scans that need one, and where else in sidereal
+// time it could be.
+func (w *world) newBlock(found *question, owing []*option) (Suggestion, bool) {
+	o := owing[0]
 	ready := math.Ceil(w.readyMin(o) - units.MS)
-	from, to := o.startMin-ready, o.endMin
+	from, to := math.Inf(1), math.Inf(-1)
 	t := found.telescope(&w.Blocks[o.block])
-	s := Suggestion{Telescope: t.Code, Block: freeID(w.base.Campaign, t.Code+"-new"), Start: instant(from), End: instant(to),
-		Receivers: []string{t.Receivers[w.Blocks[o.block].Receivers[o.receiver]].Code}, Hours: (to - from) / 60}
+	s := Suggestion{Telescope: t.Code, Block: freeID(w.base.Campaign, t.Code+"-new")}
+	for _, x := range owing {
+		from, to = math.Min(from, x.startMin-ready), math.Max(to, x.endMin)
+		if code := w.receiverOf(x); !slices.Contains(s.Receivers, code) {
+			s.Receivers = append(s.Receivers, code)
+		}
+	}
+	s.Start, s.End, s.Hours = instant(from), instant(to), (to-from)/60
 	first, last := from, to
-	if found.goal.EveryMin > 0 && found.goal.Count == 0 && found.goal.WithinMin == 0 { // one scan, whenever it counts
+	if found.goal.Kind == scheduler.KindCadence { // one scan, whenever it counts
 		early, late := w.reachOf(found, o)
 		first, last = early-ready, late+float64(o.steps*w.GridMin)
 	}
@@ -138,6 +161,8 @@ func (w *world) spare(c *choice) string {
 func (w *world) text(found *question, s *Suggestion) string {
 	var what string
 	switch s.Kind {
+	case Receiver:
+		what = sentence("let block %s of %s use %s as well", s.Block, s.Telescope, both(s.Receivers))
 	case ScanLength:
 		what = sentence("allow %s scans of %d min (now %s)", s.Source, s.ScanMinutes, minutesList(w.q.source.ScanMinutes))
 	case LowerLimit:
@@ -157,7 +182,7 @@ func (w *world) text(found *question, s *Suggestion) string {
 		if s.LSTHours[1] == 24 {
 			lst = "at any time of day"
 		}
-		what = sentence("get a block of %.1f h at %s with %s %s, for instance from %s to %s", s.Hours, s.Telescope, either(s.Receivers), lst,
+		what = sentence("get a block of %.1f h at %s with %s %s, for instance from %s to %s", s.Hours, s.Telescope, both(s.Receivers), lst,
 			clock(units.Minutes(s.Start)), clock(units.Minutes(s.End)))
 	}
 	return sentence("To meet it, %s, and add %s: %s.", what, addedTitles(s.Add), signed(s.Gain))

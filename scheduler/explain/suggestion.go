@@ -17,6 +17,7 @@ type Kind string
 const (
 	Insert      Kind = "insert"       // add scans: there is room for them
 	MakeRoom    Kind = "make_room"    // drop scans of the plan and add others
+	Receiver    Kind = "receiver"     // a receiver more in a block
 	ScanLength  Kind = "scan_length"  // allow the source another scan length
 	LowerLimit  Kind = "lower_limit"  // a lower elevation limit at a telescope
 	LongerBlock Kind = "longer_block" // minutes more at an end of a block
@@ -38,10 +39,10 @@ type Suggestion struct {
 	// What is otherwise in the campaign; empty where nothing is.
 	Source       string    // ScanLength
 	ScanMinutes  int       // ScanLength: a length to allow
-	Telescope    string    // LowerLimit, LongerBlock, NewBlock
+	Telescope    string    // Receiver, LowerLimit, LongerBlock, NewBlock
 	ElevationDeg float64   // LowerLimit: the new least elevation
-	Block        string    // LongerBlock; NewBlock: a name that is free
-	Receivers    []string  // NewBlock
+	Block        string    // Receiver, LongerBlock; NewBlock: a name that is free
+	Receivers    []string  // Receiver: to allow as well; NewBlock
 	Start, End   time.Time // LongerBlock, NewBlock: of the block as it would be
 
 	MoreMinutes float64 // LongerBlock: minutes more
@@ -63,6 +64,13 @@ func (s *Suggestion) Campaign(c *scheduler.Campaign) *scheduler.Campaign {
 			if src := &out.Sources[i]; src.Name == s.Source && !slices.Contains(src.ScanMinutes, s.ScanMinutes) {
 				src.ScanMinutes = append(slices.Clone(src.ScanMinutes), s.ScanMinutes)
 				slices.Sort(src.ScanMinutes)
+			}
+		}
+	case Receiver:
+		out.Blocks = slices.Clone(c.Blocks)
+		for i := range out.Blocks {
+			if b := &out.Blocks[i]; b.ID == s.Block {
+				b.Receivers = slices.Concat(b.Receivers, s.Receivers)
 			}
 		}
 	case LowerLimit:
@@ -150,7 +158,7 @@ func Suggest(p *feasible.Problem, plan *scheduler.Plan, unit string) ([]Suggesti
 }
 
 // kinds are all kinds, the smallest change first.
-var kinds = []Kind{Insert, MakeRoom, ScanLength, LowerLimit, LongerBlock, NewBlock}
+var kinds = []Kind{Insert, MakeRoom, Receiver, ScanLength, LowerLimit, LongerBlock, NewBlock}
 
 // signed is a change of the score in words.
 func signed(gain float64) string {

@@ -2,6 +2,7 @@ package explain
 
 import (
 	"math"
+	"slices"
 
 	"cadencewright/scheduler"
 	"cadencewright/scheduler/feasible"
@@ -14,6 +15,11 @@ func (w *world) toll(o *option) float64 {
 	case ScanLength:
 		m := o.steps * w.GridMin
 		return heavy * float64(distance(m, nearestLength(w.q.source.ScanMinutes, m)))
+	case Receiver:
+		if slices.Contains(w.base.index.Block(w.blockOf(o).ID).Receivers, w.receiverOf(o)) {
+			return 0
+		}
+		return heavy
 	case LowerLimit:
 		b := &w.Blocks[o.block]
 		return heavy * math.Max(0, w.base.Campaign.Telescopes[b.Telescope].ElevationMinDeg-w.lowest(b, o))
@@ -29,6 +35,12 @@ func (w *world) toll(o *option) float64 {
 
 func (w *world) blockOf(o *option) *scheduler.Block {
 	return &w.Campaign.Blocks[w.Blocks[o.block].Index]
+}
+
+// receiverOf is the code of an option's receiver.
+func (w *world) receiverOf(o *option) string {
+	b := &w.Blocks[o.block]
+	return w.Campaign.Telescopes[b.Telescope].Receivers[b.Receivers[o.receiver]].Code
 }
 
 // readyMin is the time in minutes from a block's start to its first scan.

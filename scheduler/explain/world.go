@@ -48,6 +48,8 @@ func (a *adviser) world(q *question, k Kind) *world {
 			t := &c.Telescopes[i]
 			t.ElevationMinDeg = math.Max(0, t.ElevationMinDeg-mostLower)
 		}
+	case Receiver:
+		q.equip(c)
 	case LongerBlock:
 		q.lengthen(c)
 	case NewBlock:
@@ -141,6 +143,26 @@ func (w *world) on(c *scheduler.Campaign) *world {
 		return nil
 	}
 	return w
+}
+
+// equip lets every block use all receivers that can serve the goal; those that
+// it has come first, as they are.
+func (q *question) equip(c *scheduler.Campaign) {
+	for ti := range q.Campaign.Telescopes {
+		codes := q.serving(ti)
+		for i := range c.Blocks {
+			b := &c.Blocks[i]
+			if b.Telescope != q.Campaign.Telescopes[ti].Code {
+				continue
+			}
+			b.Receivers = slices.Clone(b.Receivers)
+			for _, code := range codes {
+				if !slices.Contains(b.Receivers, code) {
+					b.Receivers = append(b.Receivers, code)
+				}
+			}
+		}
+	}
 }
 
 // lengthen gives every block more time at both ends, as far as its telescope

@@ -88,7 +88,7 @@ func TestImpossibleUnitsHaveNoCandidates(t *testing.T) {
 			p := problemOf(t, name)
 			plan := planOf(t, name)
 			seen := map[bool]int{}
-			for _, u := range Unmet(p, plan) {
+			for _, u := range unmet(p, plan, 0) {
 				ui := p.Units.ByName(u.Unit)
 				if p.Units.Goals[p.Units.Units[ui].Goal].Kind == scheduler.KindPhase && timesEarned(plan, u.Unit) > 0 {
 					continue // earned, but less often than wanted
@@ -127,7 +127,7 @@ func TestEveryBlockIsCountedOnce(t *testing.T) {
 	for _, name := range []string{"small-1", "medium-1", "medium-2", "hard-1"} {
 		p := problemOf(t, name)
 		empty := &scheduler.Plan{Campaign: p.Campaign.Name, From: p.Horizon.From, To: p.Horizon.To}
-		for _, u := range Unmet(p, empty) {
+		for _, u := range unmet(p, empty, 0) {
 			g := p.Units.Goals[p.Units.Units[p.Units.ByName(u.Unit)].Goal]
 			if g.Kind != scheduler.KindCadence && g.Kind != scheduler.KindPhase {
 				continue

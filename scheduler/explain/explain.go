@@ -64,8 +64,16 @@ var stages = func() map[scheduler.ReasonCode]int {
 // the campaign are looked for only for those that weigh most; Suggest has them
 // for each.
 func Unmet(p *feasible.Problem, plan *scheduler.Plan) []scheduler.Unmet {
+	return unmet(p, plan, mostReasons)
+}
+
+// unmet is Unmet with up to most suggestions for each unit.
+func unmet(p *feasible.Problem, plan *scheduler.Plan, most int) []scheduler.Unmet {
 	e := newExplainer(p, plan)
-	a := e.newAdviser()
+	a := &adviser{explainer: e}
+	if most > 0 {
+		a = e.newAdviser()
+	}
 	deep := e.weightiest(mostExplored)
 	var list []scheduler.Unmet
 	for ui := range p.Units.Units {
@@ -76,7 +84,7 @@ func Unmet(p *feasible.Problem, plan *scheduler.Plan) []scheduler.Unmet {
 		q := e.question(ui)
 		q.look()
 		reasons := q.summary()
-		for _, s := range a.suggest(q, mostReasons, deep[ui]) {
+		for _, s := range a.suggest(q, most, deep[ui]) {
 			if s.Kind != Insert { // the reason says so already
 				reasons = append(reasons, scheduler.Reason{Code: Suggested, Text: s.Text})
 			}

@@ -20,7 +20,7 @@ func withReason(t *testing.T, code scheduler.ReasonCode, f func(p *feasible.Prob
 	n := 0
 	for _, name := range []string{"small-1", "small-2", "medium-1", "medium-2", "hard-1"} {
 		p := problemOf(t, name)
-		for _, u := range Unmet(p, &scheduler.Plan{}) {
+		for _, u := range unmet(p, &scheduler.Plan{}, 0) {
 			for _, r := range u.Reasons {
 				if r.Code == code {
 					n++

@@ -1,7 +1,6 @@
 package explain
 
 import (
-	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -76,8 +75,7 @@ func earning(unit string, value float64) scheduler.Earning {
 	return scheduler.Earning{Goal: goal, Unit: unit, Value: value}
 }
 
-// explained are the causes for a unit under a plan of the given scans, without
-// suggestions.
+// explained are the causes for a unit under a plan of the given scans.
 func explained(t *testing.T, c *scheduler.Campaign, unit string, scans ...scheduler.Scan) []scheduler.Reason {
 	t.Helper()
 	if err := c.Validate(); err != nil {
@@ -87,9 +85,9 @@ func explained(t *testing.T, c *scheduler.Campaign, unit string, scans ...schedu
 	if err != nil {
 		t.Fatal(err)
 	}
-	for _, u := range Unmet(p, &scheduler.Plan{Campaign: c.Name, From: c.Start, To: c.End, Scans: scans}) {
+	for _, u := range unmet(p, &scheduler.Plan{Campaign: c.Name, From: c.Start, To: c.End, Scans: scans}, 0) {
 		if u.Unit == unit {
-			return slices.DeleteFunc(u.Reasons, func(r scheduler.Reason) bool { return r.Code == Suggested })
+			return u.Reasons
 		}
 	}
 	t.Fatalf("%s is not among the unmet units", unit)

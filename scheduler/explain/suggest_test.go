@@ -24,7 +24,7 @@ func TestSuggestionsMeetTheirUnits(t *testing.T) {
 				}
 				plan := atBest(t, p, listed)
 				before := checked(t, p.Campaign, plan)
-				for _, u := range Unmet(p, plan) {
+				for _, u := range unmet(p, plan, 0) {
 					list, err := Suggest(p, plan, u.Unit)
 					if err != nil {
 						t.Fatal(err)

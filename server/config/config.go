@@ -27,7 +27,7 @@ type Config struct {
 	LogLevel    slog.Level
 	LogJSON     bool
 	StopAfter   time.Duration // how long a stop waits for answers under way
-	PlanEffort  int64         // of a planning job, thousands of transitions
+	PlanEffort  int64         // of a planning job, thousands of changes tried
 	Workers     int           // goroutines of a planning job
 	MaxConns    int           // connections to the database
 }

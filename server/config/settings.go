@@ -35,7 +35,7 @@ var settings = []setting{
 		set: func(c *Config, v string) error { c.DataDir = v; return nil }},
 	{name: "CADENCEWRIGHT_PG_BIN", usage: "folder of initdb and postgres for the private Postgres; empty: looked for",
 		set: func(c *Config, v string) error { c.PGBin = v; return nil }},
-	{name: "CADENCEWRIGHT_PLAN_EFFORT", usage: "effort of a planning job, in thousands of transitions, 1 to 1000000", fallback: "6000",
+	{name: "CADENCEWRIGHT_PLAN_EFFORT", usage: "effort of a planning job, in thousands of changes tried, 1 to 1000000", fallback: "6000",
 		set: func(c *Config, v string) error {
 			n, err := whole(v, 1, 1_000_000)
 			c.PlanEffort = int64(n)

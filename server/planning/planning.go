@@ -31,7 +31,7 @@ type Store interface {
 // Planner makes plans for jobs.
 type Planner struct {
 	Store   Store
-	Effort  int64 // thousands of transitions; 0: the solver's own
+	Effort  int64 // thousands of changes tried; 0: the solver's own
 	Workers int
 }
 

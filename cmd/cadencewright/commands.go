@@ -8,6 +8,8 @@ var commands = []command{
 	serveCommand,
 	planCommand,
 	checkCommand,
+	explainCommand,
+	tryCommand,
 	skyCommand,
 	orbitCommand,
 	schemaCommand,

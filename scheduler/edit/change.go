@@ -1,6 +1,7 @@
 package edit
 
 import (
+	"fmt"
 	"slices"
 	"time"
 
@@ -192,7 +193,7 @@ func (s *Session) altered(old *scan, c Change) (*scan, error) {
 	to.Telescope = ""
 	x, err := s.read(&to)
 	if err != nil {
-		return nil, err
+		return nil, fmt.Errorf("scan %d: %w", c.Scan, err)
 	}
 	x.index = old.index
 	return x, nil

@@ -56,6 +56,7 @@ type table struct {
 
 	clockFrom int // minutes of instant 0 of the clock that all blocks share
 	clockLen  int
+	scratch   []float64
 	cover     map[coverKey][]bool
 	begin     map[beginKey][]bool
 }
@@ -103,6 +104,7 @@ func newTable(p *feasible.Problem) *table {
 		}
 		t.cells[bi] = slices.DeleteFunc(t.cells[bi], func(c cell) bool { return len(c.rows) == 0 })
 	}
+	t.cover, t.begin, t.scratch = nil, nil, nil // all that they were for is in the rows
 	return t
 }
 

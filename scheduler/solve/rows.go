@@ -42,7 +42,13 @@ func (t *table) fillRows(bi int, c *cell) {
 func (t *table) add(c *cell, ui, load int, value func(start int) float64) {
 	first, last := c.runs[0].From, c.runs[len(c.runs)-1].To
 	r := row{unit: ui, group: t.p.Units.Units[ui].Group, load: load}
-	vals := make([]float64, last-first)
+	// Values are worked out in a buffer and kept no longer than they must be:
+	// over weeks, most of the memory is theirs.
+	if len(t.scratch) < last-first {
+		t.scratch = make([]float64, last-first)
+	}
+	vals := t.scratch[:last-first]
+	clear(vals)
 	lo, hi := len(vals), 0
 	for _, run := range c.runs {
 		for k := run.From; k < run.To; k++ {
@@ -54,7 +60,7 @@ func (t *table) add(c *cell, ui, load int, value func(start int) float64) {
 		}
 	}
 	if lo < hi {
-		r.from, r.val = first+lo, vals[lo:hi:hi]
+		r.from, r.val = first+lo, slices.Clone(vals[lo:hi])
 		c.rows = append(c.rows, r)
 	}
 }

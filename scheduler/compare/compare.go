@@ -4,6 +4,7 @@
 package compare
 
 import (
+	"cmp"
 	"slices"
 	"time"
 
@@ -127,14 +128,6 @@ func unitChanges(before, after *scheduler.Plan) []UnitChange {
 			list = append(list, *u)
 		}
 	}
-	slices.SortFunc(list, func(a, b UnitChange) int {
-		switch {
-		case a.Unit < b.Unit:
-			return -1
-		case a.Unit > b.Unit:
-			return 1
-		}
-		return 0
-	})
+	slices.SortFunc(list, func(a, b UnitChange) int { return cmp.Compare(a.Unit, b.Unit) })
 	return list
 }

@@ -133,7 +133,7 @@ func (s *Session) draft(changes []Change) (*draft, error) {
 	slices.Sort(d.touchedSources)
 	for _, bi := range d.touchedBlocks {
 		slices.SortStableFunc(d.rows[bi].scans, inTime)
-		s.turn(bi, d.rows[bi])
+		s.turn(d.rows[bi])
 	}
 	for _, si := range d.touchedSources {
 		slices.SortStableFunc(d.sources[si], inTime)

@@ -37,7 +37,6 @@ type Session struct {
 	source [][]*scan
 	awards [][]award // by source
 	score  float64
-	faults []Violation // of the plan as it is
 
 	goals   [][]int // by source: indices into Units.Goals, of those with units
 	zones   []*time.Location
@@ -52,7 +51,7 @@ type Session struct {
 type row struct {
 	scans  []*scan
 	turns  []int
-	faults []Violation // of the room between them
+	faults []Violation // of the plan as it is; not set in a draft
 }
 
 // New prepares a plan for trying changes. The plan may break rules; it must be
@@ -109,7 +108,7 @@ func (s *Session) arrange() {
 	for bi := range s.blocks {
 		r := &s.blocks[bi]
 		slices.SortStableFunc(r.scans, inTime)
-		s.turn(bi, r)
+		s.turn(r)
 	}
 	for si := range s.source {
 		slices.SortStableFunc(s.source[si], inTime)
@@ -117,7 +116,8 @@ func (s *Session) arrange() {
 		s.score += worth(s.awards[si])
 	}
 	for bi := range s.blocks {
-		s.faults = append(s.faults, s.faultsOf(bi, &s.blocks[bi], s.pins)...)
+		r := &s.blocks[bi]
+		r.faults = s.faultsOf(bi, r, s.pins)
 	}
 }
 
@@ -136,7 +136,13 @@ func inTime(a, b *scan) int {
 func (s *Session) Score() float64 { return s.score }
 
 // Violations are the rules that the plan breaks as it is.
-func (s *Session) Violations() []Violation { return slices.Clone(s.faults) }
+func (s *Session) Violations() []Violation {
+	var list []Violation
+	for bi := range s.blocks {
+		list = append(list, s.blocks[bi].faults...)
+	}
+	return list
+}
 
 // Outcome is what a change does.
 type Outcome struct {

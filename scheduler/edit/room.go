@@ -45,9 +45,9 @@ func (s *Session) needS(a *scan, aTurn int, z *scan, zTurn int) (need, slew floa
 // roomS is a rounding error of sums of seconds.
 const roomS = 1e-6
 
-// turn chooses the turns of a block's scans and notes between which of them
-// there is too little room. It is a dynamic programme along the block.
-func (s *Session) turn(bi int, r *row) {
+// turn chooses the turns of a block's scans, by a dynamic programme along the
+// block.
+func (s *Session) turn(r *row) {
 	n := len(r.scans)
 	best := make([][]burden, n) // by scan and turn
 	back := make([][]int, n)
@@ -72,12 +72,6 @@ func (s *Session) turn(bi int, r *row) {
 		}
 		r.turns[i] = r.scans[i].turnLo + o
 		o = back[i][o]
-	}
-	r.faults = nil
-	for i := 1; i < n; i++ {
-		if v, bad := s.crowded(r, i); bad {
-			r.faults = append(r.faults, v)
-		}
 	}
 }
 
@@ -104,7 +98,7 @@ func (s *Session) onto(r *row, best [][]burden, i, o int) (burden, int) {
 }
 
 // crowded reports too little room between scan i of a block and the one before.
-func (s *Session) crowded(r *row, i int) (Violation, bool) {
+func (s *Session) crowded(r *row, i int, pins []pin) (Violation, bool) {
 	a, z := r.scans[i-1], r.scans[i]
 	have := 60 * (z.startMin - a.endMin)
 	need, slew := s.needS(a, r.turns[i-1], z, r.turns[i])
@@ -118,6 +112,13 @@ func (s *Session) crowded(r *row, i int) (Violation, bool) {
 	if have < 0 {
 		v = s.breach(RuleOverlap, z, figures{have, need, "s"}, "begins %.0f s before the end of %s at %s, and after it %s",
 			-have, before.Source, clock(a.startMin), why)
+	}
+	before.Pinned, v.Scan.Pinned = isPin(pins, a), isPin(pins, z)
+	switch {
+	case before.Pinned:
+		v.Text += "; " + before.Source + " is pinned"
+	case v.Scan.Pinned:
+		v.Text += "; " + v.Scan.Source + " is pinned"
 	}
 	v.Other = &before
 	return v, true

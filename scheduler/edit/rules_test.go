@@ -52,6 +52,9 @@ func TestWhatAChangeBreaks(t *testing.T) {
 		{"after lost time", nil, add(high, 245, 20), RuleSetup, 300, 660, 0, []string{"300 s after the lost part"}},
 		{"overlap", nil, add(high, 70, 20), RuleOverlap, -600, 130, 60, []string{"600 s before the end of " + other}},
 		{"room", nil, add(high, 80, 20), RuleRoom, 0, 130, 60, []string{"0 s after the end of " + other, "to slew and settle", "are missing"}},
+		{"too near a pin", func(c *scheduler.Campaign) {
+			c.Pins = []scheduler.Pin{{Block: "b1", Source: other, Receiver: "L", Start: after(60), Minutes: 20}}
+		}, add(high, 40, 20), RuleRoom, 0, 0, 0, []string{other + " with L", "; " + other + " is pinned"}},
 		{"a pin moved", func(c *scheduler.Campaign) {
 			c.Pins = []scheduler.Pin{{Block: "b1", Source: other, Receiver: "L", Start: after(60), Minutes: 20}}
 		}, Move(0, after(100)), RulePin, 0, 1, 0, []string{"The pin of " + other, "0 times, not once"}},

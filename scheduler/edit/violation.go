@@ -83,6 +83,7 @@ func (v *Violation) key() key {
 	if v.Other != nil {
 		k.other = *v.Other
 	}
+	k.scan.Pinned, k.other.Pinned = false, false // to pin a scan breaks nothing
 	if v.Rule == RuleLost || v.Rule == RuleSetup {
 		k.limit = v.Value
 	}
@@ -91,15 +92,16 @@ func (v *Violation) key() key {
 
 // compare lists what the changed plan breaks: what is new first.
 func (s *Session) compare(d *draft) []Violation {
-	before := map[key]bool{}
-	for i := range s.faults {
-		before[s.faults[i].key()] = true
-	}
 	var fresh, stood []Violation
 	for bi := range s.blocks {
 		r := d.rows[bi]
-		if r == nil {
-			r = &s.blocks[bi]
+		if r == nil { // nothing has changed there, nor its pins
+			stood = append(stood, s.blocks[bi].faults...)
+			continue
+		}
+		before := map[key]bool{}
+		for i := range s.blocks[bi].faults {
+			before[s.blocks[bi].faults[i].key()] = true
 		}
 		for _, v := range s.faultsOf(bi, r, d.pins) {
 			if v.New = !before[v.key()]; v.New {
@@ -126,7 +128,11 @@ func (s *Session) faultsOf(bi int, r *row, pins []pin) []Violation {
 			list = append(list, v)
 		}
 	}
-	list = append(list, r.faults...)
+	for i := 1; i < len(r.scans); i++ {
+		if v, bad := s.crowded(r, i, pins); bad {
+			list = append(list, v)
+		}
+	}
 	for i := range pins {
 		if p := &pins[i]; p.block == bi {
 			n := 0

@@ -74,7 +74,7 @@ func unmet(p *feasible.Problem, plan *scheduler.Plan, most int) []scheduler.Unme
 	if most > 0 {
 		a = e.newAdviser()
 	}
-	deep := e.weightiest(mostExplored)
+	deep := e.weightiest(e.explored())
 	var list []scheduler.Unmet
 	for ui := range p.Units.Units {
 		u := &p.Units.Units[ui]
@@ -94,10 +94,20 @@ func unmet(p *feasible.Problem, plan *scheduler.Plan, most int) []scheduler.Unme
 	return list
 }
 
-const (
-	mostReasons  = 3  // suggestions for one unit in a plan
-	mostExplored = 60 // units for which changes of the campaign are looked for
-)
+// mostReasons are the suggestions for one unit in a plan.
+const mostReasons = 3
+
+// explored is for how many units changes of the campaign are looked for. Each
+// costs in proportion to the grid instants of all blocks: of some thirty
+// thousand, which is a week of six telescopes, 10 to 20 ms.
+func (e *explainer) explored() int {
+	const least, most, instants = 5, 60, 2_000_000
+	n := 1
+	for i := range e.Blocks {
+		n += e.Blocks[i].Steps
+	}
+	return min(max(instants/n, least), most)
+}
 
 // weightiest are the unmet units that weigh most.
 func (e *explainer) weightiest(most int) map[int]bool {

@@ -55,7 +55,7 @@ func (p *Pages) Source(w http.ResponseWriter, r *http.Request) error {
 		}
 		v.Sky = append(v.Sky, panel)
 	}
-	v.Goals = goalRows(c, src)
+	v.Goals = goalRows(c, src, st.set, now)
 	if src.Binary != nil {
 		if v.Orbit, err = orbitView(c, src, live, now); err != nil {
 			return err
@@ -141,15 +141,4 @@ func verdict(samples []almanac.Sample, up int, best float64, tel *scheduler.Tele
 		}
 	}
 	return "never up this week: " + strings.Join(list, ", ")
-}
-
-// goalRows are the goals that name a source.
-func goalRows(c *scheduler.Campaign, src *scheduler.Source) []view.GoalRow {
-	var rows []view.GoalRow
-	c.EachGoal(func(kind scheduler.GoalKind, _ int, g *scheduler.Goal) {
-		if g.Source == src.Name {
-			rows = append(rows, view.GoalRow{ID: g.ID, Kind: kindWords(kind), Bands: g.Bands, Telescopes: g.Telescopes, Priority: g.Priority, Wants: goalWords(c, g.ID)})
-		}
-	})
-	return rows
 }

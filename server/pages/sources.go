@@ -50,6 +50,7 @@ type standings struct {
 	goals   []int
 	planned []bool
 	soon    time.Time
+	set     *units.Set // what can be earned in the next four weeks
 }
 
 // standingNow works out what is due from now on, and what this week's plan
@@ -72,6 +73,7 @@ func (p *Pages) standingNow(r *http.Request, c *scheduler.Campaign, ref store.Ca
 	if err != nil {
 		return nil, err
 	}
+	st.set = set
 	for i := range set.Goals {
 		st.goals[set.Goals[i].Source]++
 	}

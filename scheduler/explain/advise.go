@@ -95,34 +95,6 @@ func (q *question) helps(k Kind) bool {
 	return false
 }
 
-// inPlan is the plan's change that meets the unit at the least cost, where the
-// search for reasons has found one.
-func (a *adviser) inPlan(q *question) (Suggestion, bool) {
-	if q.best == nil || len(q.best.options) == 0 {
-		return Suggestion{}, false
-	}
-	s := Suggestion{Kind: Insert, Unit: q.unit.Name, Add: q.added(q.best)}
-	for _, x := range q.best.displaced {
-		s.Kind = MakeRoom
-		s.Drop = append(s.Drop, *x.scan)
-	}
-	changes, err := s.changes(a.whole)
-	if err != nil {
-		return s, false
-	}
-	o, met := meets(a.session, q.unit.Name, changes)
-	if !met {
-		return s, false
-	}
-	s.Gain = o.Score - o.Before
-	if s.Kind == Insert {
-		s.Text = sentence("To meet it, add %s: %s.", q.best.fresh(), signed(s.Gain))
-		return s, true
-	}
-	s.Text = sentence("To meet it, drop %s and add %s: %s.", q.listed(q.best.displaced), q.best.fresh(), signed(s.Gain))
-	return s, true
-}
-
 // meets tries changes: they meet a unit where it earns more and no rule is
 // broken that was not broken before.
 func meets(session *edit.Session, unit string, changes []edit.Change) (*edit.Outcome, bool) {

@@ -111,6 +111,15 @@ func TestWhatIsSuggested(t *testing.T) {
 				return len(s.Drop) == 1 && s.Drop[0].Source == other && math.Abs(s.Gain-2.99625) < 1e-9
 			},
 			[]string{"drop " + other + " at 00:30", "rise by 3.00"}},
+		// 20 min in the middle leave room for 40 min on neither side.
+		{"move", func(c *scheduler.Campaign, _ *scheduler.CadenceTarget) {
+			c.Blocks[0].End = after(1.5)
+			c.Sources[0].ScanMinutes = []int{40}
+			c.CadenceTargets = append(c.CadenceTargets, scheduler.CadenceTarget{Goal: scheduler.Goal{ID: "oth", Source: other, Bands: []string{"L"}, Priority: 1}, EveryD: 9, EarlyD: 2})
+		}, []scheduler.Scan{observed(other, "b1", 35./60, 20, earning("oth#1", 3))}, MakeRoom,
+			func(s *Suggestion) bool {
+				return len(s.Drop) == 0 && len(s.Move) == 1 && s.Move[0].Scan.Source == other && !s.Move[0].Start.Equal(after(35./60)) && s.Gain > 2.9
+			}, []string{"move " + other + " from 00:35 to 0", "rise by "}},
 		{"insert", func(*scheduler.Campaign, *scheduler.CadenceTarget) {}, nil, Insert,
 			func(s *Suggestion) bool {
 				return math.Abs(s.Gain-2.99625) < 1e-9 && len(s.Add) == 1 && s.Add[0].Minutes == 20

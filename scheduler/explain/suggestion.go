@@ -16,7 +16,7 @@ type Kind string
 // The kinds of change, from the smallest to the largest.
 const (
 	Insert      Kind = "insert"       // add scans: there is room for them
-	MakeRoom    Kind = "make_room"    // drop scans of the plan and add others
+	MakeRoom    Kind = "make_room"    // move or drop scans of the plan and add others
 	Receiver    Kind = "receiver"     // a receiver more in a block
 	ScanLength  Kind = "scan_length"  // allow the source another scan length
 	LowerLimit  Kind = "lower_limit"  // a lower elevation limit at a telescope
@@ -35,6 +35,7 @@ type Suggestion struct {
 
 	Add  []scheduler.Scan // to the plan
 	Drop []scheduler.Scan // from the plan
+	Move []Moved          // within the plan
 
 	// What is otherwise in the campaign; empty where nothing is.
 	Source       string    // ScanLength
@@ -51,6 +52,12 @@ type Suggestion struct {
 	// hours, the second less than the first where midnight lies between them.
 	// The same for all of a day: both 0 and 24.
 	LSTHours [2]float64
+}
+
+// Moved is a scan of the plan that is to start at another time in its block.
+type Moved struct {
+	Scan  scheduler.Scan // as it is
+	Start time.Time      // as it would be
 }
 
 // Campaign is a copy of a campaign with what the suggestion changes in it; the
@@ -122,17 +129,33 @@ func (s *Suggestion) Apply(c *scheduler.Campaign, plan *scheduler.Plan) (*schedu
 func (s *Suggestion) changes(plan *scheduler.Plan) ([]edit.Change, error) {
 	var list []edit.Change
 	for i := range s.Drop {
-		at := slices.IndexFunc(plan.Scans, func(x scheduler.Scan) bool { return sameScan(&x, &s.Drop[i]) })
-		if at < 0 {
-			return nil, scheduler.Errorf(scheduler.ErrInvalid, "the plan has no scan of %s in block %s at %s to drop",
-				s.Drop[i].Source, s.Drop[i].Block, s.Drop[i].Start.Format(time.RFC3339))
+		at, err := find(plan, &s.Drop[i])
+		if err != nil {
+			return nil, err
 		}
 		list = append(list, edit.Drop(at))
+	}
+	for i := range s.Move {
+		at, err := find(plan, &s.Move[i].Scan)
+		if err != nil {
+			return nil, err
+		}
+		list = append(list, edit.Move(at, s.Move[i].Start))
 	}
 	for _, x := range s.Add {
 		list = append(list, edit.Add(x.Block, x.Source, x.Receiver, x.Start, x.Minutes))
 	}
 	return list, nil
+}
+
+// find is where a scan stands in a plan's list.
+func find(plan *scheduler.Plan, s *scheduler.Scan) (int, error) {
+	at := slices.IndexFunc(plan.Scans, func(x scheduler.Scan) bool { return sameScan(&x, s) })
+	if at < 0 {
+		return 0, scheduler.Errorf(scheduler.ErrInvalid, "the plan has no scan of %s in block %s at %s to move or drop",
+			s.Source, s.Block, s.Start.Format(time.RFC3339))
+	}
+	return at, nil
 }
 
 func sameScan(a, b *scheduler.Scan) bool {

@@ -160,6 +160,7 @@ type suggestionJSON struct {
 	Gain         float64    `json:"gain"`
 	Add          []scanJSON `json:"add"`
 	Drop         []scanJSON `json:"drop,omitempty"`
+	Move         []moveJSON `json:"move,omitempty"`
 	Source       string     `json:"source,omitempty"`
 	ScanMinutes  int        `json:"scan_minutes,omitempty"`
 	Telescope    string     `json:"telescope,omitempty"`
@@ -170,6 +171,12 @@ type suggestionJSON struct {
 	End          *time.Time `json:"end,omitempty"`
 	MoreMinutes  float64    `json:"more_min,omitempty"`
 	LSTHours     []float64  `json:"lst_h,omitempty"`
+}
+
+// moveJSON is a scan of the plan with the start that it would have.
+type moveJSON struct {
+	Scan  scanJSON  `json:"scan"`
+	Start time.Time `json:"start"`
 }
 
 // scanJSON is a scan by what it is, without what it earns.
@@ -209,6 +216,9 @@ func explanationsJSON(list []explanation) []explanationJSON {
 func suggestedJSON(s *explain.Suggestion) suggestionJSON {
 	j := suggestionJSON{Kind: string(s.Kind), Text: s.Text, Gain: s.Gain, Add: scansJSON(s.Add), Drop: scansJSON(s.Drop), Source: s.Source,
 		ScanMinutes: s.ScanMinutes, Telescope: s.Telescope, Block: s.Block, Receivers: s.Receivers, MoreMinutes: s.MoreMinutes}
+	for _, m := range s.Move {
+		j.Move = append(j.Move, moveJSON{scansJSON([]scheduler.Scan{m.Scan})[0], m.Start})
+	}
 	// A limit of 0 degrees is a figure; the zero of other kinds is none.
 	if s.Kind == explain.LowerLimit {
 		j.ElevationDeg = &s.ElevationDeg

@@ -101,16 +101,19 @@ func TestTryFlags(t *testing.T) {
 	}
 }
 
-// A limit of 0 degrees is written, the zeros of other kinds are not.
+// A limit of 0 degrees is written, the zeros of other kinds are not; what is
+// moved has both its starts.
 func TestSuggestionJSON(t *testing.T) {
 	var b bytes.Buffer
 	list := []explanation{{unmet: scheduler.Unmet{Goal: "c1", Unit: "c1#1", Weight: 2}, could: []explain.Suggestion{
-		{Kind: explain.LowerLimit, Telescope: "ALT", ElevationDeg: 0}, {Kind: explain.ScanLength, Source: "SIM J0412+1833", ScanMinutes: 15}}}}
+		{Kind: explain.LowerLimit, Telescope: "ALT", ElevationDeg: 0}, {Kind: explain.ScanLength, Source: "SIM J0412+1833", ScanMinutes: 15},
+		{Kind: explain.MakeRoom, Move: []explain.Moved{{Scan: someOutcome().Scans[0], Start: someOutcome().Starts[1].Last}}}}}}
 	if err := writeJSON(&b, explanationsJSON(list)); err != nil {
 		t.Fatal(err)
 	}
 	got := b.String()
-	if strings.Count(got, `"elevation_min_deg": 0`) != 1 || strings.Count(got, "scan_minutes") != 1 || strings.Contains(got, "lst_h") || strings.Contains(got, `"start"`) ||
+	if strings.Count(got, `"elevation_min_deg": 0`) != 1 || strings.Count(got, "scan_minutes") != 1 || strings.Contains(got, "lst_h") || strings.Count(got, `"start"`) != 2 ||
+		!strings.Contains(got, `"start": "2027-01-18T06:30:00Z"`) ||
 		!strings.Contains(got, `"reasons": []`) {
 		t.Errorf("got %s", got)
 	}

@@ -134,7 +134,7 @@ func (c *choice) fresh() string {
 }
 
 // inCampaign is the least change of one kind of the campaign that meets the
-// unit without displacing anything.
+// unit without displacing anything that earns.
 func (a *adviser) inCampaign(q *question, k Kind) (Suggestion, bool) {
 	w := a.world(q, k)
 	if w == nil {
@@ -142,7 +142,7 @@ func (a *adviser) inCampaign(q *question, k Kind) (Suggestion, bool) {
 	}
 	found := w.question(w.Units.ByName(q.unit.Name))
 	found.look()
-	if found.best == nil || len(found.best.options) == 0 || len(found.best.displaced) > 0 {
+	if found.best == nil || len(found.best.options) == 0 || !idle(found.best.displaced) {
 		return Suggestion{}, false
 	}
 	s, ok := w.least(found)
@@ -151,6 +151,9 @@ func (a *adviser) inCampaign(q *question, k Kind) (Suggestion, bool) {
 	}
 	s.Kind, s.Unit = k, q.unit.Name
 	s.Add = append(s.Add, found.added(found.best)...)
+	for _, x := range found.best.displaced {
+		s.Drop = append(s.Drop, *x.scan)
+	}
 	if s.Kind == NewBlock { // the block has another name now than in the search
 		for i := range s.Add {
 			if s.Add[i].Block == w.spare(found.best) {

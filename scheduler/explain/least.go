@@ -185,7 +185,14 @@ func (w *world) text(found *question, s *Suggestion) string {
 		what = sentence("get a block of %.1f h at %s with %s %s, for instance from %s to %s", s.Hours, s.Telescope, both(s.Receivers), lst,
 			clock(units.Minutes(s.Start)), clock(units.Minutes(s.End)))
 	}
-	return sentence("To meet it, %s, and add %s: %s.", what, addedTitles(s.Add), signed(s.Gain))
+	instead := ""
+	if n := len(s.Drop); n > 0 {
+		instead = sentence(" in place of %s, which earns nothing", s.Drop[0].Source)
+		if n > 1 {
+			instead = sentence(" in place of %d scans that earn nothing", n)
+		}
+	}
+	return sentence("To meet it, %s, and add %s%s: %s.", what, addedTitles(s.Add), instead, signed(s.Gain))
 }
 
 // addedTitles are scans in words.

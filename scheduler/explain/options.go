@@ -106,11 +106,21 @@ func (e *explainer) cost(o *option) (displaced []*planned, possible bool) {
 			o.turnsDeg = 360 * float64(turn)
 		}
 	}
-	if e.toll != nil { // what is otherwise than it is must do without displacing anything
+	if e.toll != nil { // what is otherwise than it is must do without displacing what earns anything
 		o.toll = e.toll(o)
-		possible = possible && len(displaced) == 0 && !math.IsInf(o.toll, 1)
+		possible = possible && idle(displaced) && !math.IsInf(o.toll, 1)
 	}
 	return displaced, possible
+}
+
+// idle reports whether scans earn nothing: a planner fills free time with such.
+func idle(scans []*planned) bool {
+	for _, x := range scans {
+		if len(x.scan.Earns) > 0 {
+			return false
+		}
+	}
+	return true
 }
 
 // conflicts are the scans of the block that leave no room for an option: from

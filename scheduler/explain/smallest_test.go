@@ -59,7 +59,7 @@ func lesser(c *scheduler.Campaign, s *Suggestion) []Suggestion {
 }
 
 // roomIn reports whether a unit could be met in a campaign without displacing
-// anything.
+// anything that earns.
 func roomIn(t *testing.T, c *scheduler.Campaign, plan *scheduler.Plan, unit string) bool {
 	t.Helper()
 	p, err := feasible.Build(c, scheduler.Horizon{From: plan.From, To: plan.To})
@@ -68,7 +68,7 @@ func roomIn(t *testing.T, c *scheduler.Campaign, plan *scheduler.Plan, unit stri
 	}
 	q := newExplainer(p, plan).question(p.Units.ByName(unit))
 	q.look()
-	return q.best != nil && len(q.best.options) > 0 && len(q.best.displaced) == 0
+	return q.best != nil && len(q.best.options) > 0 && idle(q.best.displaced)
 }
 
 // Every kind of suggestion, each where its figures follow by hand.

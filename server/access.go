@@ -112,7 +112,12 @@ func (s *Server) authorise(next http.Handler) http.Handler {
 		}
 		logline.From(r.Context()).SetActor(id.Actor())
 		if err := mayCall(id, rolesOf(r.Method, pattern), chi.URLParam(r, "code")); err != nil {
-			if id.Role == auth.RoleNone && wantsPage(r) && (r.Method == http.MethodGet || r.Method == http.MethodHead) {
+			if id.Role == auth.RoleNone && r.Header.Get("HX-Request") == "true" {
+				// A part of a page cannot hold the sign-in page: the browser is sent
+				// there, and comes back to the page that it was on.
+				w.Header().Set("HX-Redirect", "/sign-in?next="+url.QueryEscape(pageOf(r)))
+			}
+			if id.Role == auth.RoleNone && r.Header.Get("HX-Request") == "" && wantsPage(r) && (r.Method == http.MethodGet || r.Method == http.MethodHead) {
 				http.Redirect(w, r, "/sign-in?next="+url.QueryEscape(r.URL.RequestURI()), http.StatusSeeOther)
 				return
 			}
@@ -121,6 +126,15 @@ func (s *Server) authorise(next http.Handler) http.Handler {
 		}
 		next.ServeHTTP(w, r.WithContext(auth.With(r.Context(), id)))
 	})
+}
+
+// pageOf is the path of the page that asks for a part of itself.
+func pageOf(r *http.Request) string {
+	u, err := url.Parse(r.Header.Get("HX-Current-URL"))
+	if err != nil || u.Path == "" {
+		return "/"
+	}
+	return u.RequestURI()
 }
 
 // mayCall refuses somebody whose role is not among those that may, and a key

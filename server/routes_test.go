@@ -110,6 +110,29 @@ func TestHeaders(t *testing.T) {
 	}
 }
 
+// A part of a page that is asked for without a session sends the browser to
+// sign in and back to the page that it was on, instead of putting the sign-in
+// page into the part.
+func TestSessionEndsUnderAPage(t *testing.T) {
+	w := newWorld(t)
+	c := w.as(auth.RoleNone)
+	res, b := c.do("GET", "/weeks/2027-W03/job", nil, "HX-Request", "true", "HX-Current-URL", w.http.URL+"/weeks/2027-W03?show=unmet")
+	if res.StatusCode != 401 || strings.Contains(string(b), "<form") {
+		t.Errorf("%s: %.200s", res.Status, b)
+	}
+	if got, want := res.Header.Get("HX-Redirect"), "/sign-in?next=%2Fweeks%2F2027-W03%3Fshow%3Dunmet"; got != want {
+		t.Errorf("sent to %q, want %q", got, want)
+	}
+	res, _ = c.do("GET", "/weeks/2027-W03/job", nil, "HX-Request", "true", "HX-Current-URL", "::")
+	if got := res.Header.Get("HX-Redirect"); got != "/sign-in?next=%2F" {
+		t.Errorf("with an address that is none, sent to %q", got)
+	}
+	res, _ = w.as(auth.RoleReader).do("GET", "/weeks/2027-W03/job", nil, "HX-Request", "true")
+	if res.StatusCode != 200 || res.Header.Get("HX-Redirect") != "" {
+		t.Errorf("with a session: %s, sent to %q", res.Status, res.Header.Get("HX-Redirect"))
+	}
+}
+
 // Bad requests get a problem document that names the field, never a 5xx.
 func TestBadReports(t *testing.T) {
 	w := newWorld(t)

@@ -96,7 +96,7 @@ func blockRow(c *scheduler.Campaign, tel *scheduler.Telescope, b *scheduler.Bloc
 }
 
 func scanView(tel *scheduler.Telescope, x *store.StoredScan) view.Scan {
-	s := view.Scan{ID: x.ID, Source: x.Source, Receiver: x.Receiver, Span: view.Span{Start: x.Start, End: x.End()}, State: x.State, Pinned: x.Pinned, TOAUs: x.TOAUs}
+	s := view.Scan{ID: x.ID, Source: x.Source, Receiver: x.Receiver, Span: view.Span{Start: x.Start, End: x.End()}, State: x.State, Pinned: x.Pinned, Extra: len(x.Earns) == 0, TOAUs: x.TOAUs}
 	if r := tel.ReceiverByCode(x.Receiver); r != nil {
 		s.Bands = r.Bands
 	}

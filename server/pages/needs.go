@@ -39,7 +39,7 @@ func needs(v *view.Week, c *scheduler.Campaign, set *units.Set, shown *shownPlan
 			n.Due = units.Instant(u.Due)
 		}
 		for _, r := range why[u.Name] {
-			n.Reasons = append(n.Reasons, r.Text)
+			n.Reasons = append(n.Reasons, typeset(r.Text))
 		}
 		n.State = standing(shown, &n, u, len(why[u.Name]) > 0 || unmet(shown.plan, u.Name))
 		v.NeedsTotal++

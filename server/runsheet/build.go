@@ -93,18 +93,26 @@ func buildBlock(in Input, tel *scheduler.Telescope, b *scheduler.Block) (Block, 
 	}
 	slices.SortFunc(mine, func(a, b PlannedScan) int { return a.Start.Compare(b.Start) })
 	var before *placed
+	var end time.Time // of the scan before
 	for _, x := range mine {
 		scan, here, err := buildScan(in.Campaign, tel, x)
 		if err != nil {
 			return Block{}, err
 		}
-		if before != nil {
+		if before == nil || lostBetween(out.Lost, end, x.Start) {
+			scan.Begins = true
+		} else {
 			scan.SlewS = slewSeconds(tel, before.last, here.first)
 		}
-		before = &here
+		before, end = &here, scan.End
 		out.Scans = append(out.Scans, scan)
 	}
 	return out, nil
+}
+
+// lostBetween tells whether any lost time lies between two instants.
+func lostBetween(lost []Span, from, to time.Time) bool {
+	return slices.ContainsFunc(lost, func(l Span) bool { return l.Start.Before(to) && from.Before(l.End) })
 }
 
 func findTelescope(c *scheduler.Campaign, code string) *scheduler.Telescope {

@@ -65,6 +65,12 @@ func TestSheetsOfAWeek(t *testing.T) {
 							t.Errorf("%s %s: scan %d is numbered %d", tel.Code, night, n, x.Number)
 						}
 						check(t, c, tel, x)
+						if first := k == 0 || lostBetween(b.Lost, b.Scans[k-1].End, x.Start); first != x.Begins {
+							t.Errorf("scan %s: begins %v, want %v", x.ID, x.Begins, first)
+						}
+						if x.Begins && x.SlewS != 0 {
+							t.Errorf("scan %s begins and slews %g s", x.ID, x.SlewS)
+						}
 						if k > 0 {
 							room := x.Start.Sub(b.Scans[k-1].End).Seconds()
 							if room < x.SlewS+x.CalS-1 {

@@ -86,8 +86,11 @@ type Scan struct {
 	LowestElDeg float64 `json:"lowest_el_deg"`
 	LeastSunDeg float64 `json:"least_sun_deg"`
 	// SlewS is the drive time from the scan before it in the block, settling
-	// included; 0 for the first.
+	// included; 0 for one that begins.
 	SlewS float64 `json:"slew_s"`
+	// Begins is true of a block's first scan and of the first after lost time:
+	// the telescope may come to it from anywhere.
+	Begins bool `json:"begins"`
 
 	SNR    float64  `json:"snr"`    // expected; 0: not detectable
 	TOAUs  float64  `json:"toa_us"` // expected TOA uncertainty; 0: not detectable

@@ -111,7 +111,10 @@ func sheetScan(n int, s site, at time.Time) view.SheetScan {
 		LSTStartH: float64(n) * 0.57, Source: names[n%len(names)], RAJ2000: "04:12:38.20", DecJ2000: "+18:33:07.1", Receiver: "L",
 		FreqMHz: 1284, BandwidthMHz: 700, CalS: 60, First: view.Pointing{AzDeg: 41.2, ElDeg: 51.3, HAH: -1.72, MotorAzDeg: &drive, Turn: n % 2},
 		Last: view.Pointing{AzDeg: 28.9, ElDeg: 57.8, HAH: -1.24, MotorAzDeg: &drive, Turn: n % 2}, LowestElDeg: 51.3, LeastSunDeg: 76.2,
-		SlewS: float64(n%4) * 41, SNR: 84.2, TOAUs: 0.31, For: []string{"c-12", "p-2"}, Pinned: n%5 == 0,
+		SlewS: float64((n+3)%4) * 41, Begins: n%4 == 1, SNR: 84.2, TOAUs: 0.31, For: []string{"c-12", "p-2"}, Pinned: n%5 == 0,
+	}
+	if n%7 == 3 {
+		out.For, out.Extra = nil, true
 	}
 	if n%3 == 0 {
 		out.Phase = &view.SheetPhase{Reference: "periastron", From: 0.214, To: 0.229}

@@ -103,7 +103,7 @@ func help(v view.Help) templ.Component {
 					}()
 				}
 				ctx = templ.InitializeContext(ctx)
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 4, "<ul class=\"prose\"><li>UTC stands above, local sidereal time and local time below.</li><li>A bar is a scan; select it for its card. ✓ done, ◐ partial, ✕ lost, ▶ observing, ◆ pinned.</li><li>White is free time, slews and calibration counted in; hatched time is lost; a shaded ground is night, the Sun more than 6° down.</li><li>Choose a source above the rows to see its elevation and where all limits allow it.</li><li>Keys: arrows walk through the scans, Enter opens one, <kbd>/</kbd> searches, <kbd>?</kbd> lists the keys.</li></ul>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 4, "<ul class=\"prose\"><li>UTC stands above, local sidereal time and local time below.</li><li>A bar is a scan; select it for its card. ✓ done, ◐ partial, ✕ lost, ▶ observing, ◆ pinned, + extra: it earns nothing this week and uses time that was left.</li><li>White is free time, slews and calibration counted in; hatched time is lost; a shaded ground is night, the Sun more than 6° down.</li><li>Choose a source above the rows to see its elevation and where all limits allow it.</li><li>Keys: arrows walk through the scans, Enter opens one, <kbd>/</kbd> searches, <kbd>?</kbd> lists the keys.</li></ul>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}

@@ -139,6 +139,9 @@ func jobLine(j *view.Job) string {
 	case view.JobDone:
 		return "Planning has ended; a new draft is there."
 	case view.JobStopped:
+		if j.Score <= 0 {
+			return "Planning was stopped before there was a plan."
+		}
 		return "Planning was stopped; the best plan found until then is kept as a draft."
 	}
 	return "Planning failed: " + j.Problem
@@ -240,8 +243,8 @@ func minutes(ms []int) string {
 
 // slew says how long the drives need to come to a scan.
 func slew(s view.SheetScan) string {
-	if s.SlewS <= 0 {
-		return "first of the block"
+	if s.Begins {
+		return "from anywhere: first of the block, or after lost time"
 	}
 	return view.Figure(s.SlewS) + " s from the scan before"
 }

@@ -58,6 +58,7 @@ func TestJobWords(t *testing.T) {
 		{view.Job{State: view.JobRunning, Stopping: true, Score: 75, Bound: 100}, "Stopping; the best plan so far is kept.", "Best score so far 75, bound 100, gap 25 %."},
 		{view.Job{State: view.JobDone, Score: 100, Bound: 100}, "Planning has ended; a new draft is there.", "Best score so far 100, bound 100."},
 		{view.Job{State: view.JobStopped, Score: 9}, "Planning was stopped; the best plan found until then is kept as a draft.", "Best score so far 9."},
+		{view.Job{State: view.JobStopped}, "Planning was stopped before there was a plan.", "No plan found yet."},
 		{view.Job{State: view.JobFailed, Problem: "the database is away"}, "Planning failed: the database is away", "No plan found yet."},
 	} {
 		if got := jobLine(&c.job); got != c.line {
@@ -129,7 +130,8 @@ func TestSheetWords(t *testing.T) {
 	for _, c := range []struct{ name, got, want string }{
 		{"pointing", pointing(view.Pointing{AzDeg: 41.2, ElDeg: 51.34, HAH: -1.72}), "az 41.2°, el 51.3°, HA −1.72 h"},
 		{"with drive", pointing(view.Pointing{MotorAzDeg: &drive, Turn: -1}), "az 0.0°, el 0.0°, HA 0.00 h, drive −12.5° (turn −1)"},
-		{"first scan", slew(view.SheetScan{}), "first of the block"},
+		{"first scan", slew(view.SheetScan{Begins: true}), "from anywhere: first of the block, or after lost time"},
+		{"same place", slew(view.SheetScan{}), "0 s from the scan before"},
 		{"slew", slew(view.SheetScan{SlewS: 81.6}), "81.6 s from the scan before"},
 		{"no plan", sheetPlan(view.RunSheet{}), "none issued"},
 		{"plan", sheetPlan(view.RunSheet{PlanRevision: 2, IssuedAt: at, IssuedBy: "Imre Oduya"}), "revision 2, issued Mon 18 Jan 20:05 UTC by Imre Oduya"},

@@ -152,6 +152,8 @@ type SheetScan struct {
 	LowestElDeg       float64
 	LeastSunDeg       float64
 	SlewS             float64
+	Begins            bool    // nothing stands before it in the block, or lost time
+	Extra             bool    // it earns nothing this week
 	SNR, TOAUs        float64 // 0: not detectable
 	For               []string
 	Pinned            bool

@@ -146,6 +146,7 @@ type Scan struct {
 	Span
 	State  string // planned, observing, done, partial, lost, dropped
 	Pinned bool
+	Extra  bool    // it earns nothing this week: it uses time that was left
 	Value  float64 // earned by all units together
 	TOAUs  float64 // predicted TOA uncertainty, microseconds; 0: not detectable
 }

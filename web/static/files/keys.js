@@ -41,8 +41,9 @@ document.addEventListener("keydown", (e) => {
     q.focus();
   } else if (e.key.startsWith("Arrow")) {
     const at = e.target.closest?.("a.scan");
-    // Without a scan in hand, up and down scroll the page as ever.
-    if (!at && e.key !== "ArrowRight") return;
+    // Without a scan in hand arrows scroll as ever: the page, and the rows in
+    // focus sideways. From nowhere in particular, right begins with the first.
+    if (!at && (e.key !== "ArrowRight" || document.activeElement !== document.body)) return;
     const to = next(e.key, at);
     if (!to) return;
     e.preventDefault();

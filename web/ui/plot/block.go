@@ -138,7 +138,8 @@ func (c *canvas) bar(a axis, s view.Scan, week string) {
 // fit is the longest form of a source's name that has room in w.
 func fit(source string, w float64) string {
 	short := view.ShortName(source)
-	for _, s := range []string{source, short, short[:min(4, len(short))]} {
+	least := []rune(short)
+	for _, s := range []string{source, short, string(least[:min(4, len(least))])} {
 		if charW*float64(len([]rune(s))) <= w {
 			return s
 		}
@@ -165,17 +166,24 @@ func Mark(s view.Scan) string {
 	case "observing":
 		return "▶"
 	}
-	if s.Pinned {
+	switch {
+	case s.Pinned:
 		return "◆"
+	case s.Extra:
+		return "+"
 	}
 	return ""
 }
 
 func stateWord(s view.Scan) string {
+	word := s.State
 	if s.Pinned {
-		return s.State + ", pinned"
+		word += ", pinned"
 	}
-	return s.State
+	if s.Extra {
+		word += ", extra"
+	}
+	return word
 }
 
 // freeOf is the parts of a block that are neither lost nor under a scan.

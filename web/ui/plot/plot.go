@@ -205,6 +205,9 @@ type lstTick struct {
 func (a axis) lstTicks(startH float64, most int) []lstTick {
 	step := stepFor(a.to.Sub(a.from), most).Hours()
 	var out []lstTick
+	if math.IsNaN(startH) || math.IsInf(startH, 0) {
+		return nil // no sidereal time is known
+	}
 	for h := math.Ceil(startH/step-1e-9) * step; ; h += step {
 		at := a.from.Add(time.Duration((h - startH) / view.SiderealRate * float64(time.Hour)))
 		if at.After(a.to) {

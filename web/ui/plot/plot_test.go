@@ -268,6 +268,16 @@ func TestTicks(t *testing.T) {
 	})
 }
 
+// Where no sidereal time is known, there are no ticks of it.
+func TestNoSiderealTime(t *testing.T) {
+	a := axis{monday, monday.Add(6 * time.Hour), 0, 900}
+	for _, h := range []float64{math.NaN(), math.Inf(1), math.Inf(-1)} {
+		if got := a.lstTicks(h, 9); len(got) != 0 {
+			t.Errorf("LST %v: %d ticks", h, len(got))
+		}
+	}
+}
+
 func TestFit(t *testing.T) {
 	for _, c := range []struct {
 		w    float64
@@ -276,5 +286,9 @@ func TestFit(t *testing.T) {
 		if got := fit("SIM J0412+1833", c.w); got != c.want {
 			t.Errorf("in %v: %q, want %q", c.w, got, c.want)
 		}
+	}
+	// Names are cut between characters, never within one.
+	if got := fit("µø≠ñ≈ç", 30); got != "µø≠ñ" {
+		t.Errorf("cut to %q", got)
 	}
 }

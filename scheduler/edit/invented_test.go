@@ -54,19 +54,24 @@ func invented() *scheduler.Campaign {
 // started is a session on a plan of the given scans at ONE.
 func started(t *testing.T, c *scheduler.Campaign, scans ...scheduler.Scan) *Session {
 	t.Helper()
-	if err := c.Validate(); err != nil {
-		t.Fatal(err)
-	}
-	h := scheduler.Horizon{From: c.Start, To: c.End}
-	p, err := feasible.Build(c, h)
-	if err != nil {
-		t.Fatal(err)
-	}
-	s, err := New(p, &scheduler.Plan{Campaign: c.Name, From: h.From, To: h.To, Scans: scans})
+	s, err := newSession(c, scans...)
 	if err != nil {
 		t.Fatal(err)
 	}
 	return s
+}
+
+// newSession is a session on a plan of the given scans for all of a campaign.
+func newSession(c *scheduler.Campaign, scans ...scheduler.Scan) (*Session, error) {
+	if err := c.Validate(); err != nil {
+		return nil, err
+	}
+	h := scheduler.Horizon{From: c.Start, To: c.End}
+	p, err := feasible.Build(c, h)
+	if err != nil {
+		return nil, err
+	}
+	return New(p, &scheduler.Plan{Campaign: c.Name, From: h.From, To: h.To, Scans: scans})
 }
 
 // at is a scan of block b1 with L.

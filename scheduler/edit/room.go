@@ -13,7 +13,7 @@ import (
 // burden is what a choice of turns costs up to some scan of a block.
 type burden struct {
 	short  int     // scans that have too little time before them
-	lackS  float64 // seconds that are missing, all together
+	lackMs int     // milliseconds that are missing, all together: whole ones, so that ways that miss as much are alike
 	moved  int     // scans that are not on the turn that the plan has
 	travel float64 // seconds of slewing
 }
@@ -22,8 +22,8 @@ func (a burden) less(b burden) bool {
 	switch {
 	case a.short != b.short:
 		return a.short < b.short
-	case a.lackS != b.lackS:
-		return a.lackS < b.lackS
+	case a.lackMs != b.lackMs:
+		return a.lackMs < b.lackMs
 	case a.moved != b.moved:
 		return a.moved < b.moved
 	}
@@ -87,7 +87,7 @@ func (s *Session) onto(r *row, best [][]burden, i, o int) (burden, int) {
 	for k, b := range best[i-1] {
 		need, slew := s.needS(a, a.turnLo+k, z, z.turnLo+o)
 		if lack := need - have; lack > roomS {
-			b.short, b.lackS = b.short+1, b.lackS+lack
+			b.short, b.lackMs = b.short+1, b.lackMs+int(math.Round(1000*lack))
 		}
 		b.travel += slew
 		if b.less(top) {

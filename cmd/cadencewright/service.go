@@ -7,6 +7,7 @@ import (
 	"log/slog"
 	"net"
 	"os"
+	"time"
 
 	"cadencewright/server"
 	"cadencewright/server/config"
@@ -89,7 +90,7 @@ type service struct {
 // newService builds the service on a database.
 func newService(std stdio, cfg config.Config, db *database) (*service, error) {
 	log := cfg.Logger(std.err)
-	planner := &planning.Planner{Store: db.store, Effort: cfg.PlanEffort, Workers: cfg.Workers}
+	planner := &planning.Planner{Store: db.store, Effort: cfg.PlanEffort, Workers: cfg.Workers, Clock: time.Now}
 	queue, err := jobs.New(db.store, planner, log)
 	if err != nil {
 		return nil, err

@@ -23,6 +23,9 @@ type Replan struct {
 	// Stability is what a later scan that stays unchanged adds to what is
 	// maximised, not to the score; 0: DefaultStability, below 0: nothing.
 	Stability float64
+	// Forgive leaves out a scan that has begun where the campaign no longer
+	// allows it, instead of refusing to plan.
+	Forgive bool
 }
 
 // DefaultStability is the worth of a later scan that stays unchanged.
@@ -87,6 +90,9 @@ func (s *state) takeUp(r *Replan) error {
 	for i := range r.From.Scans {
 		in := &r.From.Scans[i]
 		x, err := t.standing(in, r.At)
+		if err != nil && r.Forgive {
+			continue
+		}
 		if err != nil {
 			return fmt.Errorf("scan %d of the plan under way, %s in block %s at %s: %w", i, in.Source, in.Block, in.Start.Format(time.RFC3339), err)
 		}
@@ -101,7 +107,7 @@ func (s *state) takeUp(r *Replan) error {
 	s.open()
 	for _, x := range append(past, later...) {
 		if !s.room(x) {
-			if x.fixed {
+			if x.fixed && !r.Forgive {
 				return fmt.Errorf("%s in block %s began before %s and leaves no room to a pin or to another scan that began", t.p.Campaign.Sources[x.source].Name,
 					t.p.Campaign.Blocks[t.p.Blocks[x.block].Index].ID, r.At.Format(time.RFC3339))
 			}

@@ -35,13 +35,15 @@ func newRun(p *feasible.Problem, o Options) (*run, error) {
 	r := &run{o: o, t: newTable(p), top: math.Inf(-1), bound: math.Inf(1), priced: make(chan struct{})}
 	r.stages = stages
 	if o.Replan != nil {
-		r.stages = restages
 		r.t.closeBefore(o.Replan.At)
 	}
 	r.start = newState(r.t)
 	if o.Replan != nil {
 		if err := r.start.takeUp(o.Replan); err != nil {
 			return nil, err
+		}
+		if len(r.start.stays) > 0 {
+			r.stages = restages // else all is to be planned anew
 		}
 	}
 	r.menus = newMenus(r.t)

@@ -82,7 +82,7 @@ const provenGap = 1e-6
 func Solve(p *feasible.Problem, o Options) (*Result, error) {
 	if o.Effort <= 0 {
 		o.Effort = DefaultEffort(p)
-		if o.Replan != nil {
+		if o.Replan != nil && len(o.Replan.From.Scans) > 0 {
 			o.Effort = max(o.Effort/75, 60)
 		}
 	}

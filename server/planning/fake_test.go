@@ -46,6 +46,9 @@ type fake struct {
 
 	loaded int
 	told   []noted
+	plans  []store.PlanInfo // with what each holds
+	issued *scheduler.Plan
+	scans  []store.StoredScan
 	saved  *scheduler.Plan
 	meta   store.PlanMeta
 	actor  string
@@ -75,6 +78,14 @@ func (f *fake) SavePlan(_ context.Context, _ int64, p *scheduler.Plan, meta stor
 	}
 	f.saved, f.meta, f.actor, f.job.State = p, meta, actor, store.JobDone
 	return 17, nil
+}
+
+func (f *fake) PlansOf(context.Context, int64, scheduler.Horizon, int) ([]store.PlanInfo, error) {
+	return f.plans, f.fails["PlansOf"]
+}
+
+func (f *fake) Plan(_ context.Context, id int64) (store.PlanInfo, *scheduler.Plan, []store.StoredScan, error) {
+	return store.PlanInfo{ID: id}, f.issued, f.scans, f.fails["Plan"]
 }
 
 func (f *fake) Job(context.Context, int64) (store.PlanJob, error) {

@@ -24,6 +24,8 @@ type Store interface {
 	LoadCampaign(ctx context.Context, id int64) (*scheduler.Campaign, store.CampaignRef, error)
 	SavePlan(ctx context.Context, campaign int64, p *scheduler.Plan, meta store.PlanMeta, actor string) (int64, error)
 	Job(ctx context.Context, id int64) (store.PlanJob, error)
+	PlansOf(ctx context.Context, campaign int64, h scheduler.Horizon, limit int) ([]store.PlanInfo, error)
+	Plan(ctx context.Context, id int64) (store.PlanInfo, *scheduler.Plan, []store.StoredScan, error)
 	JobProgress(ctx context.Context, id, effort, of int64, score, bound float64) (stop bool, err error)
 	EndJob(ctx context.Context, id int64, state, problem string) error
 }
@@ -33,6 +35,9 @@ type Planner struct {
 	Store   Store
 	Effort  int64 // thousands of changes tried; 0: the solver's own
 	Workers int
+	// Clock tells the time, for weeks that have begun; nil: every week is
+	// planned as if it were still to come.
+	Clock func() time.Time
 }
 
 // heartbeat is how often a job that runs notes its progress.
@@ -70,9 +75,13 @@ func (p *Planner) make(ctx context.Context, job store.PlanJob) (*scheduler.Plan,
 	}
 	c = c.Canonical() // the same plan however the rows came
 	var stop atomic.Bool
+	again, err := p.underWay(ctx, job)
+	if err != nil {
+		return nil, store.PlanMeta{}, err
+	}
 	var latest atomic.Pointer[solve.Progress]
 	told := p.tell(ctx, job.ID, &latest, &stop)
-	problem, result, err := p.search(ctx, c, job, &latest, &stop)
+	problem, result, err := p.search(ctx, c, job, again, &latest, &stop)
 	// A stop may have come from progress that could not be noted.
 	if terr := told(); terr != nil && (err == nil || errors.Is(err, feasible.ErrStopped)) {
 		err = terr
@@ -87,7 +96,7 @@ func (p *Planner) make(ctx context.Context, job store.PlanJob) (*scheduler.Plan,
 	return result.Plan, store.PlanMeta{CampaignRevision: ref.Revision, Seed: job.Seed, Effort: result.Effort, Status: string(result.Status), Job: job.ID}, nil
 }
 
-func (p *Planner) search(ctx context.Context, c *scheduler.Campaign, job store.PlanJob, latest *atomic.Pointer[solve.Progress], stop *atomic.Bool) (*feasible.Problem, *solve.Result, error) {
+func (p *Planner) search(ctx context.Context, c *scheduler.Campaign, job store.PlanJob, again *solve.Replan, latest *atomic.Pointer[solve.Progress], stop *atomic.Bool) (*feasible.Problem, *solve.Result, error) {
 	stopped := func() bool { return stop.Load() || ctx.Err() != nil }
 	problem, err := feasible.BuildUntil(c, scheduler.Horizon{From: job.From, To: job.To}, stopped)
 	if errors.Is(err, feasible.ErrStopped) && !stop.Load() {
@@ -99,7 +108,7 @@ func (p *Planner) search(ctx context.Context, c *scheduler.Campaign, job store.P
 	if len(problem.Blocks) == 0 {
 		return nil, nil, scheduler.Errorf(scheduler.ErrInvalid, "no block starts in this week: bring in blocks first")
 	}
-	result, err := solve.Solve(problem, solve.Options{Seed: uint64(job.Seed), Effort: p.Effort, Workers: p.Workers,
+	result, err := solve.Solve(problem, solve.Options{Seed: uint64(job.Seed), Effort: p.Effort, Workers: p.Workers, Replan: again,
 		Stop:     stopped,
 		Progress: func(q solve.Progress) { latest.Store(&q) }})
 	if err == nil && ctx.Err() != nil && !stop.Load() {

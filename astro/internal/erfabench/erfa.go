@@ -59,7 +59,7 @@ func New(site astro.Geodetic, stars []astro.Star, start time.Time, step time.Dur
 	const mas = math.Pi / 180 / 3600e3
 	s := &Sampler{site: site, day: 2440587.5 + math.Floor(float64(start.Unix())/86400), step: step.Hours() / 24, times: n, dut1S: dut1S,
 		az: make([]C.double, n*len(stars)), el: make([]C.double, n*len(stars)), AzRad: make([]float64, n*len(stars)), ElRad: make([]float64, n*len(stars))}
-	s.firstDay = start.Sub(start.Truncate(24 * time.Hour)).Hours() / 24
+	s.firstDay = start.Sub(start.Truncate(24*time.Hour)).Hours() / 24
 	for _, x := range stars {
 		s.ra, s.dec = append(s.ra, C.double(x.RA)), append(s.dec, C.double(x.Dec))
 		// ERFA wants the motion in right ascension itself, without cos(dec).

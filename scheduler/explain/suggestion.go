@@ -109,6 +109,9 @@ func (s *Suggestion) Campaign(c *scheduler.Campaign) *scheduler.Campaign {
 // campaign.
 func (s *Suggestion) Apply(c *scheduler.Campaign, plan *scheduler.Plan) (*scheduler.Campaign, *scheduler.Plan, error) {
 	changed := s.Campaign(c)
+	if err := changed.Validate(); err != nil {
+		return nil, nil, err
+	}
 	p, err := feasible.Build(changed, scheduler.Horizon{From: plan.From, To: plan.To})
 	if err != nil {
 		return nil, nil, err

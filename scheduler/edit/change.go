@@ -64,6 +64,9 @@ func Pin(scan int) Change { return Change{Op: OpPin, Scan: scan} }
 // Unpin takes the pin of a scan away; the scan stays.
 func Unpin(scan int) Change { return Change{Op: OpUnpin, Scan: scan} }
 
+// Pins are compared by what they are, not by their place in a list: a scan is
+// pinned if the campaign has a pin just like it.
+
 // pin is a pin of the campaign, in the session's terms.
 type pin struct {
 	block, source, rx int
@@ -108,6 +111,8 @@ type draft struct {
 // draft makes the changes.
 func (s *Session) draft(changes []Change) (*draft, error) {
 	d := &draft{rows: map[int]*row{}, sources: map[int][]*scan{}, awards: map[int][]award{}, pins: s.pins}
+	// All indices are of the plan as it is, so the order of changes does not
+	// matter, and two of one scan would contradict each other.
 	seen := map[int]bool{}
 	for _, c := range changes {
 		if c.Op != OpAdd {
@@ -129,8 +134,10 @@ func (s *Session) draft(changes []Change) (*draft, error) {
 	for si := range d.sources {
 		d.touchedSources = append(d.touchedSources, si)
 	}
+	// In one order, so that sums and lists are always the same.
 	slices.Sort(d.touchedBlocks)
 	slices.Sort(d.touchedSources)
+	// Only now that all changes are made: in between, scans may overlap.
 	for _, bi := range d.touchedBlocks {
 		slices.SortStableFunc(d.rows[bi].scans, inTime)
 		s.turn(d.rows[bi])
@@ -190,7 +197,7 @@ func (s *Session) altered(old *scan, c Change) (*scan, error) {
 	if c.Minutes != 0 {
 		to.Minutes = c.Minutes
 	}
-	to.Telescope = ""
+	to.Telescope = "" // that of its block, which may be another now
 	x, err := s.read(&to)
 	if err != nil {
 		return nil, fmt.Errorf("scan %d: %w", c.Scan, err)
@@ -202,6 +209,7 @@ func (s *Session) altered(old *scan, c Change) (*scan, error) {
 // repin makes a scan a pin, or no longer one. Its block is looked at again: a
 // pin may have a length that other scans may not.
 func (s *Session) repin(d *draft, x *scan, c Change) error {
+	// A pin that is there already, or one that is not, is a mistake worth telling.
 	held := slices.ContainsFunc(d.pins, func(p pin) bool { return p.is(x) })
 	switch {
 	case c.Op == OpPin && held:
@@ -218,6 +226,7 @@ func (s *Session) repin(d *draft, x *scan, c Change) error {
 	return nil
 }
 
+// open is a block's row in the draft, to be changed.
 func (s *Session) open(d *draft, bi int) *row {
 	r := d.rows[bi]
 	if r == nil {
@@ -227,6 +236,7 @@ func (s *Session) open(d *draft, bi int) *row {
 	return r
 }
 
+// openSource is a source's scans in the draft, to be changed.
 func (s *Session) openSource(d *draft, si int) []*scan {
 	list, ok := d.sources[si]
 	if !ok {
@@ -235,6 +245,7 @@ func (s *Session) openSource(d *draft, si int) []*scan {
 	return list
 }
 
+// enter puts a scan into the draft; order and turns come when all are in.
 func (s *Session) enter(d *draft, x *scan) {
 	r := s.open(d, x.block)
 	r.scans = append(r.scans, x)
@@ -242,6 +253,7 @@ func (s *Session) enter(d *draft, x *scan) {
 	d.made = append(d.made, x)
 }
 
+// leave takes a scan out of the draft.
 func (s *Session) leave(d *draft, x *scan) {
 	same := func(y *scan) bool { return y == x }
 	r := s.open(d, x.block)

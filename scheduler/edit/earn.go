@@ -21,6 +21,11 @@ type event struct {
 	by          []*scan
 }
 
+// A plan's list of earnings may be one of several that the scans allow. Units
+// earn from the best one here, so that a difference shows what the change does
+// and not how the list was made. A source has a handful of scans in a week, so
+// exactness costs little.
+
 // earn gives the scans of one source, in order of start, to its units so that
 // they earn the most.
 func (s *Session) earn(source int, scans []*scan) []award {
@@ -78,7 +83,7 @@ func (s *Session) events(g *units.Goal, scans []candidate) []event {
 		case scheduler.KindBandPair:
 			if x.bands == g.Wants() {
 				list = append(list, event{x.startMin, 1, []*scan{x.scan}})
-				continue
+				continue // a partner would add nothing
 			}
 			for j := i - 1; j >= 0 && x.startMin-scans[j].startMin <= g.WithinMin+units.MS; j-- {
 				if x.bands|scans[j].bands == g.Wants() {
@@ -98,6 +103,8 @@ func together(g *units.Goal, scans []candidate, i int) []*scan {
 	if !under(x) {
 		return nil
 	}
+	// Band by band: all must share one. Scans come in order of start, and those
+	// that start after this one begin a common time of their own.
 	for bands := x.bands; bands != 0; bands &= bands - 1 {
 		bit := bands & -bands
 		by := []*scan{x.scan}
@@ -186,6 +193,8 @@ func (s *Session) passages(g *units.Goal, ui int, scans []candidate) []award {
 			}
 		}
 	}
+	// Every scan covers windows for the same value, so that the number counts
+	// alone, and any largest matching will do.
 	n := 0
 	for i := range scans {
 		if n == u.N {
@@ -195,6 +204,7 @@ func (s *Session) passages(g *units.Goal, ui int, scans []candidate) []award {
 			n++
 		}
 	}
+	// A map has no order; the scans' own is taken.
 	var by []int
 	for _, i := range m.owner {
 		by = append(by, i)

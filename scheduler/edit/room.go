@@ -61,6 +61,7 @@ func (s *Session) turn(r *row) {
 			}
 		}
 	}
+	// From the best end backwards along the choices that led there.
 	r.turns = make([]int, n)
 	for i, o := n-1, 0; i >= 0; i-- {
 		if i == n-1 {
@@ -105,6 +106,8 @@ func (s *Session) crowded(r *row, i int, pins []pin) (Violation, bool) {
 	if have >= need-roomS {
 		return Violation{}, false
 	}
+	// Whoever reads it wants to know what is in the way, and whether it may be
+	// moved.
 	before := s.ref(a)
 	why := fmt.Sprintf("%.0f s are needed, of which %.0f s to slew and settle", need, slew)
 	v := s.breach(RuleRoom, z, figures{have, need, "s"}, "begins %.0f s after the end of %s at %s, and %s: %.0f s are missing",

@@ -9,6 +9,9 @@ import (
 	"cadencewright/scheduler/units"
 )
 
+// Each rule is looked at by itself, also where another is broken already: a
+// person who moves a scan wants to know all that is in the way at once.
+
 // timeFaults notes what a scan breaks by when it is, and by what it is.
 func (s *Session) timeFaults(x *scan) {
 	c := s.p.Campaign
@@ -36,6 +39,8 @@ func (s *Session) timeFaults(x *scan) {
 	if !listed {
 		note(RuleReceiver, figures{}, "the block has only %v", bl.Receivers)
 	}
+	// Nothing distinguishes the first scan of a block: one that begins too soon
+	// after its start does so whatever stands before it.
 	ready := t.SetupS + t.CalS
 	switch have := 60 * (x.startMin - units.Minutes(bl.Start)); {
 	case have < -msS:
@@ -53,6 +58,7 @@ func (s *Session) timeFaults(x *scan) {
 		if used := 60 * (math.Min(x.endMin, to) - math.Max(x.startMin, from)); used > msS {
 			note(RuleLost, figures{used, 0, "s"}, "uses %.0f s of the lost part from %s to %s", used, clock(from), clock(to))
 		}
+		// Calibration and setup come again after time that was lost.
 		if have := 60 * (x.startMin - to); have >= -msS && have < ready-msS {
 			note(RuleSetup, figures{have, ready, "s"},
 				"begins %.0f s after the lost part that ends at %s; %.0f s of setup and calibration are needed", have, clock(to), ready)
@@ -88,6 +94,7 @@ func (s *Session) limitsOf(tel, source int) []limit {
 	fixed := func(v float64) func(*sky.Track, int) float64 { return func(*sky.Track, int) float64 { return v } }
 	el := func(tr *sky.Track, i int) float64 { return tr.ElDeg[i] }
 	ha := func(tr *sky.Track, i int) float64 { return tr.HADeg[i] }
+	// Masks are interpolated: only telescopes that have one pay for it.
 	least := fixed(t.ElevationMinDeg)
 	if mask := s.masks[tel]; len(mask) > 0 {
 		least = func(tr *sky.Track, i int) float64 { return math.Max(t.ElevationMinDeg, mask.ElevationDeg(tr.AzDeg[i])) }
@@ -103,6 +110,8 @@ func (s *Session) limitsOf(tel, source int) []limit {
 		list = append(list, limit{RuleHourAngle, "hour angle %.2f deg, and the range begins at %.2f deg", ha, fixed(15 * t.HourAngleRangeH[0]), false},
 			limit{RuleHourAngle, "hour angle %.2f deg, and the range ends at %.2f deg", ha, fixed(15 * t.HourAngleRangeH[1]), true})
 	case scheduler.MountTransit:
+		// Minutes of time are a quarter of a degree, and circles of declination
+		// are shorter towards the pole.
 		list = append(list, limit{RuleMeridian, "%.2f deg of hour angle from transit, and the mount follows to %.2f deg",
 			func(tr *sky.Track, i int) float64 { return math.Abs(tr.HADeg[i]) },
 			func(tr *sky.Track, i int) float64 {

@@ -40,6 +40,7 @@ func (s *Session) read(l *scheduler.Scan) (*scan, error) {
 	x.endMin = x.startMin + float64(l.Minutes)
 	bl := &c.Blocks[b.Index]
 	switch {
+	// What cannot be looked up cannot be weighed; all else is a rule to break.
 	case l.Telescope != "" && l.Telescope != t.Code:
 		return nil, scheduler.Errorf(scheduler.ErrInvalid, "telescope %q is not that of block %s, which is %s", l.Telescope, l.Block, t.Code)
 	case x.source < 0:
@@ -72,10 +73,13 @@ const (
 func (s *Session) place(x *scan, motorAzDeg *float64) error {
 	g := s.p.GridMin
 	start := math.Round(x.startMin)
+	// Instants are whole milliseconds; half of one is rounding.
 	x.gridded = math.Abs(x.startMin-start) < units.MS/2 && int64(start)%int64(g) == 0 && x.minutes%g == 0
 	x.steps = (x.minutes + g - 1) / g
 	t := &s.p.Campaign.Telescopes[x.tel]
 	src := &s.p.Campaign.Sources[x.source]
+	// Half steps: limits hold at grid instants, information is taken at the
+	// middle of each step.
 	half := time.Duration(g) * time.Minute / 2
 	w, err := sky.NewWindow(t.Site(), units.Instant(x.startMin), half, 2*x.steps+1, s.p.Campaign.DUT1S)
 	if err != nil {
@@ -93,6 +97,7 @@ func (s *Session) place(x *scan, motorAzDeg *float64) error {
 	case scheduler.MountAltAz:
 		x.from1, x.from2, x.to1, x.to2 = az[0], tr.ElDeg[0], az[x.steps], tr.ElDeg[last]
 		if motorAzDeg != nil {
+			// Within reason, whatever stands in a file.
 			x.wanted = int(math.Round(math.Max(-10, math.Min(10, (*motorAzDeg-az[0])/360))))
 		}
 	case scheduler.MountEquatorial:
@@ -120,6 +125,8 @@ func (s *Session) info(x *scan, tr *sky.Track) float64 {
 		return 0
 	}
 	g := float64(s.p.GridMin)
+	// Interference goes by the hour on the clock at the telescope. Below the
+	// horizon, where only a scan that breaks a limit looks, air is not infinite.
 	sum := 0.0
 	for k := range x.steps {
 		part := 1.0

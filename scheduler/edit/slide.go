@@ -9,6 +9,11 @@ import (
 	"cadencewright/scheduler/units"
 )
 
+// To find where a scan could start, its source is followed once through the
+// whole block; each start is then a look-up of limits and a few travel times.
+// The other scans stay where they are, but may take other turns of the azimuth
+// drive, as they may when the scan is really moved.
+
 // ranges finds where a scan could start in its block: between the scans next to
 // it, and in all of the block.
 func (s *Session) ranges(d *draft, x *scan) (slide, all []Range, err error) {
@@ -24,6 +29,8 @@ func (s *Session) ranges(d *draft, x *scan) (slide, all []Range, err error) {
 	for mine < len(f.others) && inTime(f.others[mine], x) <= 0 {
 		mine++
 	}
+	// Starts in order never change gap without passing a scan, so that a range
+	// lies in one gap.
 	gap, open := 0, -1 // scans before the start looked at; since when starts are possible
 	close := func(k int) {
 		if open < 0 {
@@ -92,6 +99,8 @@ func (s *Session) field(x *scan) (*field, error) {
 		f.az = sky.UnwrapDeg(f.track.AzDeg, nil)
 	}
 	limits := s.limitsOf(x.tel, x.source)
+	// Counted up from the block's start, so that a stretch is free of bad
+	// instants where the counts at its ends agree.
 	f.down = make([]int, b.Steps+2)
 	for k := range b.Steps + 1 {
 		f.down[k+1] = f.down[k]
@@ -190,6 +199,8 @@ func (f *field) possible(k, gap int) bool {
 	default:
 		p.from2, p.to2 = tr.DecDeg[k], tr.DecDeg[end]
 	}
+	// Before and after may ask for different turns of the same scan: one must
+	// do for both.
 	for turn := p.turnLo; turn <= p.turnHi; turn++ {
 		if f.reached(turn, gap) && f.left(turn, gap) {
 			return true

@@ -71,6 +71,9 @@ func (s *Session) ref(x *scan) Ref {
 	return Ref{l.Block, l.Source, l.Receiver, l.Start, l.Minutes, false}
 }
 
+// What was broken before is known by the rule and the scans, not by the text:
+// the figures of a fault may change with its neighbours.
+
 // key tells violations apart: the same rule about the same scans.
 type key struct {
 	rule        Rule

@@ -53,6 +53,7 @@ func (a *adviser) suggest(q *question, most int, deep bool) []Suggestion {
 			return list // nothing else is as cheap
 		}
 	}
+	// From here on the campaign is to change, which costs people something.
 	if !deep || q.hopeless() {
 		return list
 	}
@@ -173,6 +174,8 @@ func (a *adviser) inCampaign(q *question, k Kind) (Suggestion, bool) {
 // confirm tries a suggestion on the campaign with its change, cut down to the
 // source of the unit and to the telescopes and blocks that matter.
 func (a *adviser) confirm(q *question, s *Suggestion) (gain float64, ok bool) {
+	// All blocks of the telescopes that are touched, so that blocks that overlap
+	// are found, and those with the source's scans, which decide what is earned.
 	keep := map[string]bool{s.Telescope: true}
 	for _, x := range s.Add {
 		keep[x.Telescope] = true
@@ -184,6 +187,7 @@ func (a *adviser) confirm(q *question, s *Suggestion) (gain float64, ok bool) {
 		}
 	}
 	c := q.reduced(func(b *scheduler.Block) bool { return keep[b.Telescope] || holds[b.ID] })
+	// A campaign that its reader would refuse is nothing to suggest.
 	changed := s.Campaign(c)
 	if changed.Validate() != nil {
 		return 0, false
@@ -214,6 +218,7 @@ func (a *adviser) confirm(q *question, s *Suggestion) (gain float64, ok bool) {
 // reduced is the campaign with the goals and the history of the question's
 // source alone, and with those of its blocks that are kept.
 func (q *question) reduced(keep func(*scheduler.Block) bool) *scheduler.Campaign {
+	// Sources stay: scans of others take their time in the blocks.
 	c := *q.Campaign
 	mine := q.source.Name
 	other := func(g *scheduler.Goal) bool { return g.Source != mine }

@@ -43,6 +43,7 @@ func (w *world) least(found *question) (Suggestion, bool) {
 	return w.newBlock(found, owing)
 }
 
+// leastReceiver is one receiver more in one block.
 func (w *world) leastReceiver(owing []*option) (Suggestion, bool) {
 	for _, o := range owing {
 		if o.block != owing[0].block || o.receiver != owing[0].receiver {
@@ -53,6 +54,7 @@ func (w *world) leastReceiver(owing []*option) (Suggestion, bool) {
 	return Suggestion{Telescope: b.Telescope, Block: b.ID, Receivers: []string{w.receiverOf(owing[0])}}, true
 }
 
+// leastLength is one length more.
 func (w *world) leastLength(owing []*option) (Suggestion, bool) {
 	for _, o := range owing[1:] {
 		if o.steps != owing[0].steps {
@@ -62,6 +64,7 @@ func (w *world) leastLength(owing []*option) (Suggestion, bool) {
 	return Suggestion{Source: w.q.source.Name, ScanMinutes: owing[0].steps * w.GridMin}, true
 }
 
+// leastLimit is a lower limit at one telescope.
 func (w *world) leastLimit(owing []*option) (Suggestion, bool) {
 	b, low := &w.Blocks[owing[0].block], math.Inf(1)
 	for _, o := range owing {
@@ -74,6 +77,7 @@ func (w *world) leastLimit(owing []*option) (Suggestion, bool) {
 	return Suggestion{Telescope: w.Campaign.Telescopes[b.Telescope].Code, ElevationDeg: math.Max(0, math.Floor(10*low-1e-4)/10)}, true
 }
 
+// leastBlock is more time for one block, at one end or at both.
 func (w *world) leastBlock(owing []*option) (Suggestion, bool) {
 	early, late := 0.0, 0.0
 	for _, o := range owing {
@@ -110,6 +114,7 @@ func (w *world) newBlock(found *question, owing []*option) (Suggestion, bool) {
 		early, late := w.reachOf(found, o)
 		first, last = early-ready, late+float64(o.steps*w.GridMin)
 	}
+	// Sidereal time says it once for all days: the sky comes round to it.
 	if last-first >= siderealDayMin {
 		s.LSTHours = [2]float64{0, 24}
 		return s, true
@@ -136,6 +141,7 @@ func (w *world) reachOf(q *question, o *option) (first, last float64) {
 		return o.place.Allows(o.steps, start) && q.unit.Timeliness(at) > 0 && q.spaced(at) &&
 			units.Quality(o.place.InfoOf(o.receiver, start, o.steps), q.goal.TOAUs) > 0
 	}
+	// Step by step: what is gathered depends on how high the source stands.
 	lo, hi := o.start, o.start
 	for serves(lo - 1) {
 		lo--

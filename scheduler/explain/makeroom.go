@@ -19,6 +19,8 @@ func (a *adviser) inPlan(q *question) (Suggestion, bool) {
 		s.Kind = MakeRoom
 		s.Drop = append(s.Drop, *x.scan)
 	}
+	// The search for reasons counts what scans earn as the plan lists it; what is
+	// really gained and lost comes from trying it.
 	o, met := a.tried(&s)
 	if !met {
 		return s, false
@@ -45,6 +47,7 @@ func (a *adviser) tried(s *Suggestion) (*edit.Outcome, bool) {
 // keep moves scans that were to be dropped, where they have room elsewhere in
 // their blocks and the plan is then worth more.
 func (a *adviser) keep(s *Suggestion) {
+	// One after the other: where one goes decides what room the next has.
 	for i := 0; i < len(s.Drop); {
 		if better, ok := a.moved(s, i); ok {
 			*s = better

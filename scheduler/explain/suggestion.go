@@ -65,6 +65,7 @@ type Moved struct {
 func (s *Suggestion) Campaign(c *scheduler.Campaign) *scheduler.Campaign {
 	out := *c
 	switch s.Kind {
+	// Lists are cloned down to what changes: the campaign belongs to others.
 	case ScanLength:
 		out.Sources = slices.Clone(c.Sources)
 		for i := range out.Sources {

@@ -9,6 +9,9 @@ import (
 	"cadencewright/scheduler/units"
 )
 
+// Tolls are minutes, degrees or hours, one sort in each world, so that they can
+// be compared; a receiver more is one whatever it is.
+
 // toll is what an option owes to the world not being the real one.
 func (w *world) toll(o *option) float64 {
 	switch w.kind {
@@ -56,6 +59,7 @@ func (w *world) outside(o *option) (early, late float64) {
 	if real == nil {
 		return math.Inf(1), 0
 	}
+	// People give whole minutes; a block of 59.5 min would be odd.
 	early = math.Ceil(units.Minutes(real.Start) - (o.startMin - w.readyMin(o)) - units.MS)
 	late = math.Ceil(o.endMin - units.Minutes(real.End) - units.MS)
 	return math.Max(0, early), math.Max(0, late)
@@ -78,6 +82,7 @@ func (w *world) lowest(b *feasible.Block, o *option) float64 {
 		if b.Mount.Kind == scheduler.MountTransit { // at the end of its track, which is the worst
 			ha = t.TrackHalfMin / 4 / math.Max(math.Cos(dec*math.Pi/180), 1e-6)
 		}
+		// The altitude of a point on the sphere, from hour angle and declination.
 		sinLat, cosLat := math.Sincos(t.LatitudeDeg * math.Pi / 180)
 		sinDec, cosDec := math.Sincos(dec * math.Pi / 180)
 		return math.Asin(sinLat*sinDec+cosLat*cosDec*math.Cos(ha*math.Pi/180)) * 180 / math.Pi

@@ -43,6 +43,7 @@ func (a *adviser) world(q *question, k Kind) *world {
 	w := &world{base: a.explainer, kind: k, q: q, spares: map[string]bool{}}
 	switch k {
 	case LowerLimit:
+		// Horizons stay: hills are not lowered.
 		c.Telescopes = slices.Clone(c.Telescopes)
 		for i := range c.Telescopes {
 			t := &c.Telescopes[i]
@@ -70,6 +71,8 @@ func (a *adviser) lengths(q *question) *world {
 	if w == nil {
 		return nil
 	}
+	// Many lengths at once would make many options; few far apart tell which way
+	// to look.
 	found := w.question(w.Units.ByName(q.unit.Name))
 	found.look()
 	if found.best == nil {
@@ -125,6 +128,8 @@ func (w *world) on(c *scheduler.Campaign) *world {
 	}
 	e := &explainer{Problem: p, plan: w.base.plan, index: scheduler.NewIndex(c), planned: make([][]*planned, len(p.Blocks)),
 		earners: make([][]*planned, len(p.Units.Units)), total: make([]float64, len(p.Units.Units)), toll: w.toll}
+	// Where the plan's scans stand and what they earn has been worked out, and no
+	// change of a world moves them.
 	copy(e.planned, w.base.planned)
 	for ui := range p.Units.Units {
 		if i := w.base.Units.ByName(p.Units.Units[ui].Name); i >= 0 {
@@ -212,6 +217,7 @@ func (q *question) spare(c *scheduler.Campaign, names map[string]bool) {
 		if len(receivers) == 0 {
 			continue
 		}
+		// A horizon of many weeks has more free time than needs to be looked at.
 		left := mostSpareD * 1440
 		for _, span := range q.free(t) {
 			from, to := gridUp(span[0], q.GridMin), math.Min(span[1], span[0]+left)
@@ -241,6 +247,7 @@ func (q *question) serving(ti int) []string {
 // free are the stretches, in minutes, in which a telescope has no block and
 // scans for the unit would count.
 func (q *question) free(t *scheduler.Telescope) [][2]float64 {
+	// A scan may begin before what counts, and its block before that.
 	longest := float64(q.source.ScanMinutes[len(q.source.ScanMinutes)-1])
 	ready := (t.SetupS + t.CalS) / 60
 	lo, hi := math.Max(q.Units.From, units.Minutes(q.Campaign.Start)), math.Min(q.Units.To, units.Minutes(q.Campaign.End))

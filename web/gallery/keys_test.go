@@ -46,7 +46,7 @@ func TestKeysOfTheWeek(t *testing.T) {
 		{kb.ArrowRight, "SIM J0029-0554, S, 20:55"},
 		{kb.ArrowRight, "SIM J0613-3014, UWB, 21:45"},
 		{kb.ArrowLeft, "SIM J0029-0554, S, 20:55"},
-		{kb.ArrowDown, "SIM J1857+0943, L, 04:05"}, // the nearest by place in the block below
+		{kb.ArrowDown, "SIM J1849+0937, L, 04:05"}, // the nearest by place in the block below
 		{kb.ArrowUp, "SIM J0029-0554, S, 20:55"},
 	} {
 		if c.key != "" {

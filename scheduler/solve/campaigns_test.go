@@ -65,23 +65,29 @@ func TestCampaigns(t *testing.T) {
 	}
 }
 
-// The same problem, seed and effort give the same bytes on one worker and two.
+// The same problem, seed and effort give the same bytes, run twenty times on
+// one worker and on two.
 func TestSamePlanAgain(t *testing.T) {
-	var first []byte
-	for i, workers := range []int{1, 2, 1, 2} {
-		r, err := solve.Solve(problem(t, "medium-2"), solve.Options{Seed: 7, Effort: 60, Workers: workers})
-		if err != nil {
-			t.Fatal(err)
-		}
-		out, err := scheduler.WritePlan(r.Plan)
-		if err != nil {
-			t.Fatal(err)
-		}
-		if i == 0 {
-			first = out
-		} else if !bytes.Equal(first, out) {
-			t.Fatalf("run %d on %d workers gives another plan", i, workers)
-		}
+	for name, runs := range map[string]int{"small-1": 20, "medium-2": 4} {
+		t.Run(name, func(t *testing.T) {
+			p := problem(t, name)
+			var first []byte
+			for i := range runs {
+				r, err := solve.Solve(p, solve.Options{Seed: 7, Effort: 60, Workers: 1 + i%2})
+				if err != nil {
+					t.Fatal(err)
+				}
+				out, err := scheduler.WritePlan(r.Plan)
+				if err != nil {
+					t.Fatal(err)
+				}
+				if i == 0 {
+					first = out
+				} else if !bytes.Equal(first, out) {
+					t.Fatalf("run %d on %d workers gives another plan", i, 1+i%2)
+				}
+			}
+		})
 	}
 }
 

@@ -54,12 +54,12 @@ func (b *builder) due(g Goal, from *scheduler.Goal, n int) error {
 	if err := b.goal(&g, from); err != nil {
 		return err
 	}
+	g.Last, g.Had = b.last(&g)
 	b.s.Goals = append(b.s.Goals, g)
-	last, ok := b.last(&g)
 	due, urgency := b.s.From, 3.0
-	if ok {
-		due = math.Max(b.s.From, last+g.EveryMin)
-		urgency = 1 + math.Min(2, math.Max(0, (b.s.From-last-g.EveryMin)/g.EveryMin))
+	if g.Had {
+		due = math.Max(b.s.From, g.Last+g.EveryMin)
+		urgency = 1 + math.Min(2, math.Max(0, (b.s.From-g.Last-g.EveryMin)/g.EveryMin))
 	}
 	for k := 1; due < b.s.To-MS; k++ {
 		if k > maxWindows {

@@ -63,15 +63,16 @@ func TestDueWindowsAndUrgency(t *testing.T) {
 		last    []had
 		dueDays []float64
 		weights []float64
+		first   float64 // when it was due first after history, in days
 	}{
-		{"no history: due at once, three times as urgent", nil, []float64{0, 4}, []float64{6, 2}},
-		{"not due yet", []had{{"A", "L", -1, 20}}, []float64{3}, []float64{2}},
-		{"due exactly at the start", []had{{"A", "L", -4, 20}}, []float64{0, 4}, []float64{2, 2}},
-		{"overdue by two days of four", []had{{"A", "L", -6, 20}}, []float64{0, 4}, []float64{3, 2}},
-		{"overdue beyond measure", []had{{"A", "L", -90, 20}}, []float64{0, 4}, []float64{6, 2}},
-		{"the last one counts", []had{{"A", "L", -1, 20}, {"B", "W", -6, 20}}, []float64{3}, []float64{2}},
-		{"another band does not", []had{{"A", "S", -1, 20}, {"A", "L", -6, 20}}, []float64{0, 4}, []float64{3, 2}},
-		{"nor does a scan within the horizon", []had{{"A", "L", 0, 20}, {"A", "L", -6, 20}}, []float64{0, 4}, []float64{3, 2}},
+		{"no history: due at once, three times as urgent", nil, []float64{0, 4}, []float64{6, 2}, 0},
+		{"not due yet", []had{{"A", "L", -1, 20}}, []float64{3}, []float64{2}, 3},
+		{"due exactly at the start", []had{{"A", "L", -4, 20}}, []float64{0, 4}, []float64{2, 2}, 0},
+		{"overdue by two days of four", []had{{"A", "L", -6, 20}}, []float64{0, 4}, []float64{3, 2}, -2},
+		{"overdue beyond measure", []had{{"A", "L", -90, 20}}, []float64{0, 4}, []float64{6, 2}, -86},
+		{"the last one counts", []had{{"A", "L", -1, 20}, {"B", "W", -6, 20}}, []float64{3}, []float64{2}, 3},
+		{"another band does not", []had{{"A", "S", -1, 20}, {"A", "L", -6, 20}}, []float64{0, 4}, []float64{3, 2}, -2},
+		{"nor does a scan within the horizon", []had{{"A", "L", 0, 20}, {"A", "L", -6, 20}}, []float64{0, 4}, []float64{3, 2}, -2},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			camp := campaign(c.last...)
@@ -79,6 +80,9 @@ func TestDueWindowsAndUrgency(t *testing.T) {
 			s := build(t, camp, 7)
 			if len(s.Units) != len(c.dueDays) {
 				t.Fatalf("%d units, want %d", len(s.Units), len(c.dueDays))
+			}
+			if g := s.Goals[0]; g.Had != (len(c.last) > 0) || g.Had && math.Abs((g.Last+g.EveryMin-s.From)/1440-c.first) > 1e-9 {
+				t.Errorf("last had %v on day %g, want it an interval before day %g", g.Had, (g.Last-s.From)/1440, c.first)
 			}
 			sum := 0.0
 			for i, u := range s.Units {

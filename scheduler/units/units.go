@@ -36,6 +36,10 @@ type Goal struct {
 	EveryMin   float64 // (all but phase)
 	EarlyMin   float64 // (all but phase)
 	Units      []int   // its units, indices into Set.Units
+	// Last is the minute at which the scan began that satisfied the goal last
+	// before the horizon; Had is false where none ever did. (all but phase)
+	Last float64
+	Had  bool
 
 	bands BandSet
 	all   bool   // every telescope may serve

@@ -11,8 +11,8 @@ import (
 )
 
 // goalRows are the goals that name a source, and how each stands now. set is
-// what can be earned from now on.
-func goalRows(c *scheduler.Campaign, src *scheduler.Source, set *units.Set, now time.Time) []view.GoalRow {
+// what can be earned from now on, soon the end of the week.
+func goalRows(c *scheduler.Campaign, src *scheduler.Source, set *units.Set, now, soon time.Time) []view.GoalRow {
 	byID := map[string]*units.Goal{}
 	for i := range set.Goals {
 		byID[set.Goals[i].ID] = &set.Goals[i]
@@ -26,57 +26,78 @@ func goalRows(c *scheduler.Campaign, src *scheduler.Source, set *units.Set, now 
 		switch u := byID[g.ID]; {
 		case u == nil:
 		case kind == scheduler.KindPhase:
-			row.Standing, row.Due = orbitsHad(set, u, c.PhaseGoals[at].Windows)
+			orbitsHad(&row, set, u, c.PhaseGoals[at].Windows, soon)
 		default:
-			row.Standing, row.Due = sinceLast(set, u, now)
+			sinceLast(&row, u, now, soon)
 		}
 		rows = append(rows, row)
 	})
 	return rows
 }
 
+// dueAt is when a goal with due windows is due next, or was due and has not
+// been satisfied since: an interval after the scan that satisfied it last. A
+// goal that never was satisfied is due now.
+func dueAt(g *units.Goal, now time.Time) time.Time {
+	if !g.Had {
+		return now
+	}
+	return units.Instant(g.Last + g.EveryMin)
+}
+
 // sinceLast says how long ago a goal with due windows was last satisfied, and
-// when it is due. Of what was overdue by two intervals or more the urgency does
-// not tell how long ago.
-func sinceLast(set *units.Set, g *units.Goal, now time.Time) (string, time.Time) {
-	every := g.EveryMin / (24 * 60)
-	if len(g.Units) == 0 {
-		return "had; not due within four weeks", time.Time{}
+// when it is or was due.
+func sinceLast(row *view.GoalRow, g *units.Goal, now, soon time.Time) {
+	row.Due = dueAt(g, now)
+	if !g.Had {
+		row.State, row.Standing = view.GoalLate, "never had"
+		return
 	}
-	u := &set.Units[g.Units[0]]
-	due := units.Instant(u.Due)
-	switch urgency := u.Weight / g.Priority; {
-	case urgency > 3-1e-9:
-		return fmt.Sprintf("never had, or overdue by %.3g days or more", 2*every), due
-	case urgency > 1+1e-9:
-		late := (urgency - 1) * every
-		return fmt.Sprintf("%.1f days since the last: overdue by %.1f", every+late, late), due
+	row.Standing = "last " + view.Days(units.Instant(g.Last), now)
+	switch {
+	case row.Due.Before(now):
+		row.State = view.GoalLate
+		row.Standing += ", late by " + days(math.Round(now.Sub(row.Due).Hours()/24*10)/10)
+	case row.Due.Before(soon):
+		row.State = view.GoalDue
+	default:
+		row.State = view.GoalMet
 	}
-	// Due in time: the last one was an interval before.
-	return fmt.Sprintf("%.1f days since the last", max(0, every-due.Sub(now).Hours()/24)), due
 }
 
 // orbitsHad says how many of the wanted orbits a phase goal has, and when the
 // next of its windows that still wants one is passed.
-func orbitsHad(set *units.Set, g *units.Goal, windows []scheduler.PhaseWindow) (string, time.Time) {
+func orbitsHad(row *view.GoalRow, set *units.Set, g *units.Goal, windows []scheduler.PhaseWindow, soon time.Time) {
 	need, remaining := 0, 0
 	for _, w := range windows {
 		need += w.Need
 	}
-	var next time.Time
 	for _, ui := range g.Units {
 		u := &set.Units[ui]
-		// A unit's value is the priority times what remains over what is needed.
-		remaining += int(math.Round(u.Value / g.Priority * float64(windows[u.K].Need)))
+		remaining += orbitsLeft(g, u, windows[u.K].Need)
 		if len(u.Passages) > 0 {
-			if at := units.Instant(u.Passages[0].Enter); next.IsZero() || at.Before(next) {
-				next = at
+			at := units.Instant(max(u.Passages[0].Enter, set.From)) // one may be under way
+			if row.Due.IsZero() || at.Before(row.Due) {
+				row.Due = at
 			}
 		}
 	}
-	text := fmt.Sprintf("%d of %d orbits had", need-remaining, need)
-	if remaining > 0 && next.IsZero() {
-		text += ", no passage within four weeks"
+	row.Standing = fmt.Sprintf("%d of %d orbits had", need-remaining, need)
+	switch {
+	case remaining == 0:
+		row.State = view.GoalMet
+	case row.Due.IsZero():
+		row.State = view.GoalOpen
+		row.Standing += ", no passage within four weeks"
+	case row.Due.Before(soon):
+		row.State = view.GoalDue
+	default:
+		row.State = view.GoalOpen
 	}
-	return text, next
+}
+
+// orbitsLeft is how many of the orbits that a window needs are still wanted: a
+// unit is worth the priority times what remains over what is needed.
+func orbitsLeft(g *units.Goal, u *units.Unit, need int) int {
+	return int(math.Round(u.Value / g.Priority * float64(need)))
 }

@@ -1,6 +1,7 @@
 package pages
 
 import (
+	"math"
 	"os"
 	"strings"
 	"testing"
@@ -52,23 +53,28 @@ func TestSinceLast(t *testing.T) {
 	}
 	c.CadenceTargets = []scheduler.CadenceTarget{g}
 	now := c.Blocks[0].Start.UTC()
+	soon := scheduler.WeekStart(now).AddDate(0, 0, 7)
+	left := soon.Sub(now).Hours() / 24 // days of the week to come
 	for _, x := range []struct {
 		daysAgo  float64 // 0: never
+		state    view.GoalState
 		standing string
 		dueIn    float64 // days
 	}{
-		{0, "never had, or overdue by 14 days or more", 0},
-		{3, "3.0 days since the last", 4},
-		{9, "9.0 days since the last: overdue by 2.0", 0},
-		{40, "never had, or overdue by 14 days or more", 0},
+		{0, view.GoalLate, "never had", 0},
+		{6.9, view.GoalDue, "last 6.9 days ago", 0.1},
+		{7 - left + 0.01, view.GoalDue, "", left - 0.01},
+		{7 - left, view.GoalMet, "", left}, // due when the week is over
+		{9, view.GoalLate, "last 9.0 days ago, late by 2 d", -2},
+		{40.5, view.GoalLate, "last 40.5 days ago, late by 33.5 d", -33.5}, // urgency ends at two intervals, lateness does not
 	} {
 		c.History = nil
 		if x.daysAgo > 0 {
 			at := now.Add(-time.Duration(x.daysAgo * 24 * float64(time.Hour)))
 			c.History = []scheduler.HistoryScan{{Source: g.Source, Telescope: tel.Code, Receiver: rx.Code, Start: at, Minutes: 30, Counted: true}}
 		}
-		rows := goalRows(c, c.SourceByName(g.Source), fourWeeks(t, c, now), now)
 		var row *view.GoalRow
+		rows := goalRows(c, c.SourceByName(g.Source), fourWeeks(t, c, now), now, soon)
 		for i := range rows {
 			if rows[i].ID == g.ID {
 				row = &rows[i]
@@ -77,10 +83,10 @@ func TestSinceLast(t *testing.T) {
 		if row == nil {
 			t.Fatalf("goal %s has no row", g.ID)
 		}
-		if row.Standing != x.standing {
-			t.Errorf("had %g days ago: %q, want %q", x.daysAgo, row.Standing, x.standing)
+		if row.State != x.state || x.standing != "" && row.Standing != x.standing {
+			t.Errorf("had %g days ago: %s, %q, want %s, %q", x.daysAgo, row.State, row.Standing, x.state, x.standing)
 		}
-		if d := row.Due.Sub(now).Hours() / 24; d < x.dueIn-0.001 || d > x.dueIn+0.001 {
+		if d := row.Due.Sub(now).Hours() / 24; math.Abs(d-x.dueIn) > 0.001 {
 			t.Errorf("had %g days ago: due in %.3f days, want %g", x.daysAgo, d, x.dueIn)
 		}
 	}
@@ -91,24 +97,36 @@ func TestSinceLast(t *testing.T) {
 func TestEveryGoalStands(t *testing.T) {
 	c := demoCampaign(t)
 	now := c.Blocks[0].Start.UTC()
+	soon := scheduler.WeekStart(now).AddDate(0, 0, 7)
 	set := fourWeeks(t, c, now)
 	rows, phases, had := 0, 0, 0
 	for i := range c.Sources {
-		for _, r := range goalRows(c, &c.Sources[i], set, now) {
+		for _, r := range goalRows(c, &c.Sources[i], set, now, soon) {
 			rows++
-			if r.Standing == "" || r.Wants == "" || r.Kind == "" {
+			if r.State == "" || r.Standing == "" || r.Wants == "" || r.Kind == "" {
 				t.Errorf("%s of %s: %+v", r.ID, c.Sources[i].Name, r)
 			}
-			if strings.Contains(r.Standing, "orbits had") {
+			late, due := !r.Due.After(now), r.Due.Before(soon)
+			switch r.Kind {
+			case "phase":
 				phases++
 				if !strings.HasPrefix(r.Standing, "0 of") {
 					had++
 				}
-				if r.Due.IsZero() != strings.Contains(r.Standing, "no passage") && !complete(r.Standing) {
-					t.Errorf("%s: %q, due %v", r.ID, r.Standing, r.Due)
+				want := view.GoalOpen
+				switch {
+				case complete(r.Standing):
+					want = view.GoalMet
+				case !r.Due.IsZero() && due:
+					want = view.GoalDue
 				}
-			} else if r.Due.IsZero() != strings.Contains(r.Standing, "not due") {
-				t.Errorf("%s: %q, due %v", r.ID, r.Standing, r.Due)
+				if r.State != want || r.Due.IsZero() != (strings.Contains(r.Standing, "no passage") || complete(r.Standing)) {
+					t.Errorf("%s: %s, %q, due %v", r.ID, r.State, r.Standing, r.Due)
+				}
+			default:
+				if (r.State == view.GoalLate) != late || (r.State == view.GoalDue) != (due && !late) || r.Due.IsZero() {
+					t.Errorf("%s: %s, %q, due %v", r.ID, r.State, r.Standing, r.Due)
+				}
 			}
 		}
 	}

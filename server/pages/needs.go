@@ -34,7 +34,7 @@ func needs(v *view.Week, c *scheduler.Campaign, set *units.Set, shown *shownPlan
 		u := &set.Units[i]
 		g := &set.Goals[u.Goal]
 		n := view.Need{Goal: g.ID, Unit: u.Name, Kind: kindWords(g.Kind), Source: c.Sources[g.Source].Name, Bands: ix.Goal(g.ID).Bands,
-			Weight: u.Weight, Value: value[u.Name], Scans: earned[u.Name], What: what(c, g, u)}
+			Weight: u.Weight, Value: value[u.Name], Scans: earned[u.Name], What: what(c, set, g, u)}
 		if u.Passages == nil && g.Kind != scheduler.KindPhase {
 			n.Due = units.Instant(u.Due)
 		}
@@ -110,18 +110,18 @@ func kindWords(k scheduler.GoalKind) string {
 }
 
 // what says in words what a unit asks for.
-func what(c *scheduler.Campaign, g *units.Goal, u *units.Unit) string {
+func what(c *scheduler.Campaign, set *units.Set, g *units.Goal, u *units.Unit) string {
 	switch g.Kind {
 	case scheduler.KindCadence:
 		s := "every " + days(g.EveryMin/1440)
 		if g.TOAUs > 0 {
 			s += fmt.Sprintf(", to %.3g µs", g.TOAUs)
 		}
-		return s + urgency(g, u)
+		return s + urgency(set, g, u)
 	case scheduler.KindOverlap:
-		return fmt.Sprintf("%d telescopes at once for %g min, every %s", g.Count, g.OverlapMin, days(g.EveryMin/1440)) + urgency(g, u)
+		return fmt.Sprintf("%d telescopes at once for %g min, every %s", g.Count, g.OverlapMin, days(g.EveryMin/1440)) + urgency(set, g, u)
 	case scheduler.KindBandPair:
-		return fmt.Sprintf("both bands within %g h, every %s", g.WithinMin/60, days(g.EveryMin/1440)) + urgency(g, u)
+		return fmt.Sprintf("both bands within %g h, every %s", g.WithinMin/60, days(g.EveryMin/1440)) + urgency(set, g, u)
 	}
 	for i := range c.PhaseGoals {
 		if p := &c.PhaseGoals[i]; p.ID == g.ID {
@@ -139,17 +139,15 @@ func days(d float64) string {
 	return fmt.Sprintf("%.3g d", d)
 }
 
-// urgency says how late a first window is: the weight is priority times
-// urgency, 3 where nothing was ever counted.
-func urgency(g *units.Goal, u *units.Unit) string {
-	if u.K != 1 || g.Priority <= 0 {
+// urgency says how late a first window is, which makes it weigh more.
+func urgency(set *units.Set, g *units.Goal, u *units.Unit) string {
+	switch late := set.From - g.Last - g.EveryMin; {
+	case u.K != 1:
 		return ""
-	}
-	switch x := u.Weight / g.Priority; {
-	case x >= 2.999:
-		return "; never observed, or overdue by two intervals or more"
-	case x > 1.0005:
-		return fmt.Sprintf("; overdue by %s", days(math.Round((x-1)*g.EveryMin/1440*10)/10))
+	case !g.Had:
+		return "; never had"
+	case late > g.EveryMin/1000:
+		return "; overdue by " + days(math.Round(late/144)/10)
 	}
 	return ""
 }

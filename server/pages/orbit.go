@@ -148,7 +148,7 @@ func ringWindows(v *view.Orbit, c *scheduler.Campaign, src *scheduler.Source, re
 			left := 0
 			if ui := set.ByName(g.ID + "@" + itoa(j)); ui >= 0 {
 				u := &set.Units[ui]
-				left = int(u.Value/g.Priority*float64(w.Need) + 0.5)
+				left = orbitsLeft(&set.Goals[u.Goal], u, w.Need)
 			}
 			pw := view.PhaseWindow{Goal: g.ID, From: w.From + shift, To: w.To + shift, Need: w.Need, Had: w.Need - left}
 			for pw.From < 0 {

@@ -55,7 +55,7 @@ func (p *Pages) Source(w http.ResponseWriter, r *http.Request) error {
 		}
 		v.Sky = append(v.Sky, panel)
 	}
-	v.Goals = goalRows(c, src, st.set, now)
+	v.Goals = goalRows(c, src, st.set, now, st.soon)
 	if src.Binary != nil {
 		if v.Orbit, err = orbitView(c, src, live, now); err != nil {
 			return err

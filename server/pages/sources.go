@@ -75,34 +75,37 @@ func (p *Pages) standingNow(r *http.Request, c *scheduler.Campaign, ref store.Ca
 	}
 	st.set = set
 	for i := range set.Goals {
-		st.goals[set.Goals[i].Source]++
-	}
-	for i := range set.Units {
-		u := &set.Units[i]
-		g := &set.Goals[u.Goal]
-		if g.Kind == scheduler.KindPhase {
-			continue
-		}
-		due := units.Instant(u.Due)
-		if st.due[g.Source].IsZero() || due.Before(st.due[g.Source]) {
-			st.due[g.Source] = due
-		}
-		if u.K == 1 && u.Weight > 1.0005*g.Priority {
-			st.late[g.Source] = true
-		}
+		st.count(&set.Goals[i], now)
 	}
 	live, err := p.store.LiveScans(r.Context(), "", now, st.soon)
 	if err != nil {
 		return nil, err
 	}
 	for i := range live {
-		if j, ok := index[live[i].Source]; ok && live[i].State == store.ScanPlanned {
+		if j, ok := index[live[i].Source]; ok && live[i].State == store.ScanPlanned && len(live[i].Earns) > 0 {
 			st.planned[j] = true
 		}
 	}
 	return st, nil
 }
 
+// count takes a goal into how its source stands: what is due first counts.
+func (st *standings) count(g *units.Goal, now time.Time) {
+	i := g.Source
+	st.goals[i]++
+	if g.Kind == scheduler.KindPhase { // due whenever its windows are passed
+		return
+	}
+	due := dueAt(g, now)
+	if st.due[i].IsZero() || due.Before(st.due[i]) {
+		st.due[i] = due
+	}
+	if !g.Had || due.Before(now) {
+		st.late[i] = true
+	}
+}
+
+// state is how a source stands.
 func (st *standings) state(i int) view.SourceState {
 	switch {
 	case st.goals[i] == 0:

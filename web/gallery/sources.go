@@ -75,10 +75,10 @@ func source(telescopes int) view.Source {
 	}
 	v.Orbit, v.Cadence = orbitOf(), cadence()
 	v.Goals = []view.GoalRow{
-		{ID: "c-12", Kind: "cadence", Bands: []string{"L"}, Priority: 1.5, Wants: "one scan every 7 days, TOA uncertainty 0.5 µs", Standing: "9.2 days since the last: overdue by 2.2", Due: now.Add(-53 * time.Hour)},
-		{ID: "c-13", Kind: "cadence", Bands: []string{"S"}, Telescopes: []string{"ALD", "TARN"}, Priority: 1, Wants: "one scan every 14 days", Standing: "6.1 days since the last", Due: now.Add(190 * time.Hour)},
-		{ID: "p-2", Kind: "phase", Bands: []string{"L", "S"}, Priority: 2, Wants: "phase 0.18 to 0.32 from periastron in 5 orbits, 30 min each", Standing: "2 of 5 orbits had", Due: now.Add(30 * time.Hour)},
-		{ID: "b-4", Kind: "band pair", Bands: []string{"L", "S"}, Priority: 0.8, Wants: "L and S within 12 h, every 28 days", Standing: "had 3.4 days ago"},
+		{ID: "c-12", Kind: "cadence", Bands: []string{"L"}, Priority: 1.5, Wants: "one scan every 7 days, TOA uncertainty 0.5 µs", State: view.GoalLate, Standing: "last 9.2 days ago, late by 2.2 d", Due: now.Add(-53 * time.Hour)},
+		{ID: "c-13", Kind: "cadence", Bands: []string{"S"}, Telescopes: []string{"ALD", "TARN"}, Priority: 1, Wants: "one scan every 14 days", State: view.GoalMet, Standing: "last 6.1 days ago", Due: now.Add(190 * time.Hour)},
+		{ID: "p-2", Kind: "phase", Bands: []string{"L", "S"}, Priority: 2, Wants: "phase 0.18 to 0.32 from periastron in 5 orbits, 30 min each", State: view.GoalDue, Standing: "2 of 5 orbits had", Due: now.Add(30 * time.Hour)},
+		{ID: "b-4", Kind: "band pair", Bands: []string{"L", "S"}, Priority: 0.8, Wants: "L and S within 12 h, every 28 days", State: view.GoalMet, Standing: "last 3.4 days ago", Due: now.Add(590 * time.Hour)},
 	}
 	return v
 }

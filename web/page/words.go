@@ -177,6 +177,19 @@ func sourceWord(s view.SourceState) string {
 	return "fine"
 }
 
+// goalWord says a goal's state.
+func goalWord(s view.GoalState) string {
+	switch s {
+	case view.GoalDue:
+		return "due this week"
+	case view.GoalLate:
+		return "overdue"
+	case view.GoalOpen:
+		return "open"
+	}
+	return "met"
+}
+
 // lines joins what a run sheet says of a pointing.
 func pointing(p view.Pointing) string {
 	s := "az " + view.Degrees(p.AzDeg) + ", el " + view.Degrees(p.ElDeg) + ", HA " + view.Fixed(p.HAH, 2) + " h"

@@ -89,6 +89,13 @@ func TestEveryStateHasItsOwnWordAndSign(t *testing.T) {
 		}
 		words[sourceWord(s)] = s
 	}
+	goals := map[string]view.GoalState{}
+	for _, s := range []view.GoalState{view.GoalMet, view.GoalDue, view.GoalLate, view.GoalOpen} {
+		if other, ok := goals[goalWord(s)]; ok {
+			t.Errorf("goals %s and %s both show %q", s, other, goalWord(s))
+		}
+		goals[goalWord(s)] = s
+	}
 }
 
 func TestByDay(t *testing.T) {

@@ -30,7 +30,7 @@ type SourceRow struct {
 	PbD      float64   // orbital period in days; 0: single
 	Last     time.Time // start of the last counted scan; zero: never
 	LastAt   string    // telescope and receiver of it
-	NextDue  time.Time // zero: nothing due in sight
+	NextDue  time.Time // past: overdue since then; zero: nothing due in sight
 	State    SourceState
 	Goals    int
 }
@@ -154,6 +154,18 @@ type GoalRow struct {
 	Telescopes []string // empty: all
 	Priority   float64
 	Wants      string // in words
-	Standing   string // how it stands, in words
-	Due        time.Time
+	State      GoalState
+	Standing   string    // what it has had, in words
+	Due        time.Time // next, or since when it is overdue; zero: not in sight
 }
+
+// GoalState says whether a goal wants something now.
+type GoalState string
+
+// The states of a goal.
+const (
+	GoalMet  GoalState = "met"  // nothing due before the end of the week
+	GoalDue  GoalState = "due"  // due this week
+	GoalLate GoalState = "late" // overdue, or never had
+	GoalOpen GoalState = "open" // orbits are still wanted, but none this week
+)

@@ -57,7 +57,7 @@ func safeName(s string) string {
 
 func sheetView(s *runsheet.Sheet, f view.Page) view.RunSheet {
 	t := s.Telescope
-	v := view.RunSheet{Page: f, Campaign: s.Campaign, Night: s.Night, From: s.From, To: s.To, Zone: s.Zone(), PlanRevision: s.PlanRevision, IssuedAt: s.IssuedAt, IssuedBy: s.IssuedBy,
+	v := view.RunSheet{Page: f, Campaign: s.Campaign, Night: s.Night, From: s.From, To: s.To, Zone: s.Zone(), PlanWeek: s.PlanWeek, PlanRevision: s.PlanRevision, IssuedAt: s.IssuedAt, IssuedBy: s.IssuedBy,
 		Cautions: s.Cautions, Reminders: s.Reminders, CSV: "/telescopes/" + url.PathEscape(t.Code) + "/nights/" + s.Night + ".csv",
 		PrevNight: shift(s.Night, -1), NextNight: shift(s.Night, 1),
 		Telescope: view.SheetTelescope{Code: t.Code, Name: t.Name, LongitudeDeg: t.LongitudeDeg, LatitudeDeg: t.LatitudeDeg, HeightM: t.HeightM, Timezone: t.Timezone,

@@ -65,7 +65,7 @@ func (s Sheets) Sheet(ctx context.Context, telescope, night string) (*runsheet.S
 		if err != nil {
 			return nil, err
 		}
-		in.Plan = runsheet.PlanInfo{Revision: info.Revision, IssuedAt: info.IssuedAt, IssuedBy: info.IssuedBy}
+		in.Plan = runsheet.PlanInfo{Week: scheduler.WeekName(info.From), Revision: info.Revision, IssuedAt: info.IssuedAt, IssuedBy: info.IssuedBy}
 	}
 	return runsheet.Build(in)
 }

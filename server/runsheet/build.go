@@ -10,6 +10,7 @@ import (
 
 // PlanInfo is what a sheet says of the plan it was made from.
 type PlanInfo struct {
+	Week       string // that the plan is of, 2027-W03
 	Revision   int
 	IssuedAt   time.Time
 	IssuedBy   string
@@ -49,7 +50,7 @@ func Build(in Input) (*Sheet, error) {
 	}
 	s := &Sheet{
 		Campaign: in.Campaign.Name, Night: night.Name, From: night.From, To: night.To, zone: night.Zone,
-		PlanRevision: in.Plan.Revision, IssuedAt: in.Plan.IssuedAt, IssuedBy: in.Plan.IssuedBy,
+		PlanWeek: in.Plan.Week, PlanRevision: in.Plan.Revision, IssuedAt: in.Plan.IssuedAt, IssuedBy: in.Plan.IssuedBy,
 		Superseded: in.Plan.Superseded, Telescope: telescopeOf(tel),
 		Cautions: cautions(tel), Reminders: reminders(tel),
 	}

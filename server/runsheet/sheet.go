@@ -11,9 +11,10 @@ import "time"
 type Sheet struct {
 	Campaign     string      `json:"campaign"`
 	Telescope    Telescope   `json:"telescope"`
-	Night        string      `json:"night"` // local date on which the night begins
-	From         time.Time   `json:"from"`  // local noon
-	To           time.Time   `json:"to"`    // the next local noon
+	Night        string      `json:"night"`               // local date on which the night begins
+	From         time.Time   `json:"from"`                // local noon
+	To           time.Time   `json:"to"`                  // the next local noon
+	PlanWeek     string      `json:"plan_week,omitempty"` // 2027-W03; empty: no issued plan
 	PlanRevision int         `json:"plan_revision"`
 	IssuedAt     time.Time   `json:"issued_at"`
 	IssuedBy     string      `json:"issued_by,omitempty"`

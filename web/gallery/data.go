@@ -131,11 +131,15 @@ func scan(n int, s site, at time.Time, minutes int) view.Scan {
 		state = "observing"
 	}
 	rx := s.receivers[n%len(s.receivers)]
-	return view.Scan{
+	v := view.Scan{
 		ID: int64(1000 + n), Source: names[n%len(names)], Receiver: rx, Bands: []string{rx},
 		Span: view.Span{Start: at, End: at.Add(time.Duration(minutes) * time.Minute)}, State: state,
 		Pinned: n%11 == 7, Value: 0.4 + float64(n%7)*0.61, TOAUs: 0.12 + float64(n%9)*0.37,
 	}
+	if n%13 == 8 {
+		v.Extra, v.Value = true, 0
+	}
+	return v
 }
 
 // stripOf is the strip of the blocks of a week.

@@ -8,6 +8,8 @@ import (
 	"sync/atomic"
 	"testing"
 
+	"github.com/chromedp/cdproto/cdp"
+	"github.com/chromedp/cdproto/emulation"
 	"github.com/chromedp/chromedp"
 	"github.com/chromedp/chromedp/kb"
 
@@ -68,6 +70,58 @@ func TestKeysOfTheWeek(t *testing.T) {
 	if got := ask(t, ctx, `document.getElementById("q").value + document.getElementById("keys").open`); !strings.HasSuffix(got, "?false") {
 		t.Errorf("a ? typed into the search opened the help or was lost: %q", got)
 	}
+}
+
+// TestRowsScrollByKeys: while a row itself is in focus, left and right scroll it
+// as the browser does and leave the focus where it is.
+func TestRowsScrollByKeys(t *testing.T) {
+	browser := startBrowser(t)
+	server := httptest.NewServer(Handler())
+	t.Cleanup(server.Close)
+	ctx := tab(t, browser)
+	do(t, ctx, chromedp.EmulateViewport(480, 900), chromedp.Navigate(server.URL+"/week"))
+	const row = `document.querySelector(".block .wide")`
+	if got := ask(t, ctx, row+`.focus(); String(`+row+`.scrollWidth > `+row+`.clientWidth + 100 && document.activeElement === `+row+`)`); got != "true" {
+		t.Fatal("the first row has nothing to scroll, or cannot be in focus")
+	}
+	do(t, ctx, chromedp.KeyEvent(kb.ArrowRight), chromedp.Poll[chromedp.Void](row+`.scrollLeft > 0`))
+	if got := ask(t, ctx, `String(document.activeElement === `+row+`)`); got != "true" {
+		t.Error("the right arrow took the focus away from the row")
+	}
+	do(t, ctx, chromedp.KeyEvent(kb.ArrowLeft), chromedp.Poll[chromedp.Void](row+`.scrollLeft === 0`))
+	// With a scan in focus, arrows go on walking.
+	ask(t, ctx, row+`.querySelector("a.scan").focus(); "focused"`)
+	do(t, ctx, chromedp.KeyEvent(kb.ArrowRight))
+	if got := ask(t, ctx, focused); !strings.HasPrefix(got, "SIM J0029-0554, S, 20:55") {
+		t.Errorf("from the first scan the focus went to %q", got)
+	}
+}
+
+// TestPaperSaysWhatItIs: on paper a run sheet says of which plan and revision it
+// is and when it was made, though the navigation is left out.
+func TestPaperSaysWhatItIs(t *testing.T) {
+	browser := startBrowser(t)
+	server := httptest.NewServer(Handler())
+	t.Cleanup(server.Close)
+	ctx := tab(t, browser)
+	do(t, ctx, media("print"), chromedp.Navigate(server.URL+"/run-sheet"))
+	text := ask(t, ctx, `document.body.innerText.replace(/\s+/g, " ")`) // what is shown, not what is hidden
+	for _, want := range []string{"week 2027-W03, revision 2, issued Tue 19 Jan 13:05 UTC by Imre Oduya", "sheet made Tue 19 Jan 14:35 UTC", "page made Tue 19 Jan 14:35"} {
+		if !strings.Contains(text, want) {
+			t.Errorf("the sheet on paper does not say %q", want)
+		}
+	}
+	if strings.Contains(text, "As CSV") || strings.Contains(text, "Sign out") {
+		t.Error("the navigation stands on paper")
+	}
+}
+
+// media makes the page lay itself out as on a screen or on paper.
+func media(kind string) chromedp.Action[chromedp.Void] {
+	return chromedp.Func(func(ctx context.Context, t *chromedp.Target) error {
+		_, err := cdp.Call(ctx, t, emulation.SetEmulatedMedia, emulation.SetEmulatedMediaParams{Media: kind})
+		return err
+	})
 }
 
 // TestThemeStays changes the theme by its switch and loads another page.

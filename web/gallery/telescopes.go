@@ -80,7 +80,7 @@ func runSheet(blocks int) view.RunSheet {
 			Code: s.code, Name: s.name, LongitudeDeg: s.lon, LatitudeDeg: s.lat, HeightM: 1080, Timezone: "Africa/Johannesburg", Mount: s.mount,
 			ElevationMinDeg: s.minEl, ElevationMaxDeg: 88, SunMinDeg: 12,
 		},
-		Night: "2027-01-19", From: from, To: from.Add(24 * time.Hour), Zone: s.zone, PlanRevision: 2, IssuedAt: now.Add(-90 * time.Minute), IssuedBy: "Imre Oduya",
+		Night: "2027-01-19", From: from, To: from.Add(24 * time.Hour), Zone: s.zone, PlanWeek: week, PlanRevision: 2, IssuedAt: now.Add(-90 * time.Minute), IssuedBy: "Imre Oduya",
 		Cautions: []string{
 			"This sheet commands nothing: the operator on duty, local safety rules, interlocks, wind and snow limits come first.",
 			"Never point near the Sun below the local limit of 12°.",

@@ -267,7 +267,7 @@ func sheetPlan(v view.RunSheet) string {
 	if v.PlanRevision == 0 {
 		return "none issued"
 	}
-	return "revision " + strconv.Itoa(v.PlanRevision) + ", issued " + view.Moment(v.IssuedAt) + " UTC" + by(v.IssuedBy)
+	return "week " + v.PlanWeek + ", revision " + strconv.Itoa(v.PlanRevision) + ", issued " + view.Moment(v.IssuedAt) + " UTC" + by(v.IssuedBy)
 }
 
 // sunLimit is a source's own limit; the telescopes have theirs besides.

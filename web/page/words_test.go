@@ -141,7 +141,7 @@ func TestSheetWords(t *testing.T) {
 		{"same place", slew(view.SheetScan{}), "0 s from the scan before"},
 		{"slew", slew(view.SheetScan{SlewS: 81.6}), "81.6 s from the scan before"},
 		{"no plan", sheetPlan(view.RunSheet{}), "none issued"},
-		{"plan", sheetPlan(view.RunSheet{PlanRevision: 2, IssuedAt: at, IssuedBy: "Imre Oduya"}), "revision 2, issued Mon 18 Jan 20:05 UTC by Imre Oduya"},
+		{"plan", sheetPlan(view.RunSheet{PlanWeek: "2027-W03", PlanRevision: 2, IssuedAt: at, IssuedBy: "Imre Oduya"}), "week 2027-W03, revision 2, issued Mon 18 Jan 20:05 UTC by Imre Oduya"},
 		{"not detectable", snr(0), "not detectable"},
 		{"detectable", snr(84.21), "84.2"},
 		{"no lengths", minutes(nil), view.None},

@@ -94,6 +94,7 @@ type RunSheet struct {
 	Night        string    // local date on which the night begins
 	From, To     time.Time // local noon to local noon
 	Zone         *time.Location
+	PlanWeek     string
 	PlanRevision int // 0: no issued plan covers the night
 	IssuedAt     time.Time
 	IssuedBy     string

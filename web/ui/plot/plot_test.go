@@ -168,6 +168,30 @@ func TestBlockRowStatesAreMoreThanColour(t *testing.T) {
 	}
 }
 
+// An extra scan is named so in words and has a sign; a pin and what became of
+// it come before that.
+func TestExtraScans(t *testing.T) {
+	for _, c := range []struct {
+		scan       view.Scan
+		mark, word string
+	}{
+		{view.Scan{State: "planned"}, "", "planned"},
+		{view.Scan{State: "planned", Extra: true}, "+", "planned, extra"},
+		{view.Scan{State: "planned", Extra: true, Pinned: true}, "◆", "planned, pinned, extra"},
+		{view.Scan{State: "done", Extra: true}, "✓", "done, extra"},
+	} {
+		if mark, word := Mark(c.scan), stateWord(c.scan); mark != c.mark || word != c.word {
+			t.Errorf("%+v: %q, %q, want %q, %q", c.scan, mark, word, c.mark, c.word)
+		}
+		b := block()
+		c.scan.ID, c.scan.Source, c.scan.Receiver, c.scan.Span = 5, "SIM J0412+1833", "L", span(30, 120)
+		b.Scans = []view.Scan{c.scan}
+		if svg := BlockRow(b, "2027-W03", ""); !strings.Contains(svg, c.word) {
+			t.Errorf("the picture does not say %q", c.word)
+		}
+	}
+}
+
 func TestBlockRowFree(t *testing.T) {
 	want := []view.Span{span(0, 30), span(130, 200), span(260, 300), span(330, 360)}
 	got := Free(block())

@@ -83,7 +83,7 @@ func sheetScan(x runsheet.Scan) view.SheetScan {
 		return view.Pointing{AzDeg: p.AzDeg, ElDeg: p.ElDeg, HAH: p.HAH, MotorAzDeg: p.MotorAzDeg, Turn: p.Turn}
 	}
 	v := view.SheetScan{Number: x.Number, ID: x.ID, State: x.State, Span: view.Span{Start: x.Start, End: x.End}, Minutes: x.Minutes, LSTStartH: x.LSTStartH,
-		Source: x.Source, RAJ2000: x.RAJ2000, DecJ2000: x.DecJ2000, Receiver: x.Receiver, FreqMHz: x.FreqMHz, BandwidthMHz: x.BandwidthMHz, CalS: x.CalS,
+		Source: x.Source, RAJ2000: x.RAJ2000, DecJ2000: typeset(x.DecJ2000), Receiver: x.Receiver, FreqMHz: x.FreqMHz, BandwidthMHz: x.BandwidthMHz, CalS: x.CalS,
 		First: pointing(x.First), Last: pointing(x.Last), LowestElDeg: x.LowestElDeg, LeastSunDeg: x.LeastSunDeg, SlewS: x.SlewS, Begins: x.Begins, Extra: len(x.For) == 0, SNR: x.SNR, TOAUs: x.TOAUs,
 		For: x.For, Pinned: x.Pinned, Notes: x.Notes}
 	if x.Phase != nil {

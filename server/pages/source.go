@@ -36,7 +36,7 @@ func (p *Pages) Source(w http.ResponseWriter, r *http.Request) error {
 	if err != nil {
 		return err
 	}
-	v := view.Source{Page: f, Name: src.Name, RA: runsheet.FormatRA(src.Star().RA), Dec: runsheet.FormatDec(src.Star().Dec), RADeg: src.RADeg, DecDeg: src.DecDeg,
+	v := view.Source{Page: f, Name: src.Name, RA: runsheet.FormatRA(src.Star().RA), Dec: typeset(runsheet.FormatDec(src.Star().Dec)), RADeg: src.RADeg, DecDeg: src.DecDeg,
 		PMRAMasYr: src.PMRAMasYr, PMDecMasYr: src.PMDecMasYr, PeriodMs: src.PeriodS * 1e3, DMPcCm3: src.DMPcCm3, FluxMJy: src.FluxMJy,
 		FluxFreqMHz: src.FluxFreqMHz, SpectralIdx: src.SpectralIdx, WidthUs: src.WidthS * 1e6, JitterUs1h: src.JitterUs1h, SunMinDeg: src.SunMinDeg,
 		ScanMinutes: src.ScanMinutes, Week: scheduler.WeekName(from), From: from, To: to, Cadence: cadence(c, src, live, now)}
@@ -120,7 +120,7 @@ func extend(spans []view.Span, at time.Time, step time.Duration) []view.Span {
 // verdict says in words when a source is up at a telescope.
 func verdict(samples []almanac.Sample, up int, best float64, tel *scheduler.Telescope, sunMin float64) string {
 	if up > 0 {
-		return fmt.Sprintf("up %.1f h a day, best %.1f°", float64(up)/float64(len(samples))*24, best)
+		return fmt.Sprintf("up %.1f h a day, best %s", float64(up)/float64(len(samples))*24, view.Degrees(best))
 	}
 	causes := map[almanac.Cause]int{}
 	for _, s := range samples {
@@ -129,7 +129,7 @@ func verdict(samples []almanac.Sample, up int, best float64, tel *scheduler.Tele
 		}
 	}
 	if best < tel.ElevationMinDeg {
-		return fmt.Sprintf("never up: highest %.1f°, the limit is %.1f°", best, tel.ElevationMinDeg)
+		return "never up: highest " + view.Degrees(best) + ", the limit is " + view.Degrees(tel.ElevationMinDeg)
 	}
 	var list []string
 	for _, s := range samples {

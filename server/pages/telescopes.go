@@ -110,10 +110,10 @@ func limitFacts(t *scheduler.Telescope) []view.Fact {
 	}
 	switch t.Mount {
 	case scheduler.MountAltAz:
-		return []view.Fact{{Name: "Azimuth drive", Value: fmt.Sprintf("%g° to %g°", t.AzimuthRangeDeg[0], t.AzimuthRangeDeg[1])},
+		return []view.Fact{{Name: "Azimuth drive", Value: typeset(fmt.Sprintf("%g° to %g°", t.AzimuthRangeDeg[0], t.AzimuthRangeDeg[1]))},
 			rate("Rate in azimuth", t.RateAzDegS, t.AccelAzDegS2), rate("Rate in elevation", t.RateElDegS, t.AccelElDegS2)}
 	case scheduler.MountEquatorial:
-		return []view.Fact{{Name: "Hour angle", Value: fmt.Sprintf("%g h to %g h", t.HourAngleRangeH[0], t.HourAngleRangeH[1])},
+		return []view.Fact{{Name: "Hour angle", Value: typeset(fmt.Sprintf("%g h to %g h", t.HourAngleRangeH[0], t.HourAngleRangeH[1]))},
 			rate("Rate in hour angle", t.RateHADegS, t.AccelHADegS2), rate("Rate in declination", t.RateDecDegS, t.AccelDecDegS2)}
 	}
 	return []view.Fact{{Name: "Around upper transit", Value: fmt.Sprintf("± %g min / cos(declination)", t.TrackHalfMin)}, rate("Rate in declination", t.RateElDegS, t.AccelElDegS2)}

@@ -143,7 +143,7 @@ func (p *Pages) job(ctx context.Context, campaign int64, h scheduler.Horizon, ma
 		return nil, err
 	}
 	v := &view.Job{ID: j.ID, Week: scheduler.WeekName(h.From), State: view.JobState(j.State), Score: j.Score, AskedBy: j.AskedBy, Started: j.AskedAt,
-		Problem: j.Problem, MayStop: mayStop && j.Active(), Stopping: j.StopWanted && j.Active()}
+		Problem: typeset(j.Problem), MayStop: mayStop && j.Active(), Stopping: j.StopWanted && j.Active()}
 	if j.State == store.JobCancelled {
 		v.State = view.JobStopped
 	}

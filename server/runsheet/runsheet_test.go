@@ -112,6 +112,58 @@ func check(t *testing.T, c *scheduler.Campaign, tel *scheduler.Telescope, x Scan
 	}
 }
 
+// A block of three scans with ten minutes lost between the last two: the first
+// scan begins the block and the third begins after the loss; the second is
+// slewed to, if only for the settling time.
+func TestWhatBegins(t *testing.T) {
+	c, scans := planned(t, "small-1")
+	var block *scheduler.Block
+	var mine []PlannedScan
+	for i := 0; len(mine) < 3 && i < len(c.Blocks); i++ {
+		block, mine = &c.Blocks[i], nil
+		for _, x := range scans {
+			if x.Block == block.ID {
+				mine = append(mine, x)
+			}
+		}
+	}
+	if len(mine) < 3 {
+		t.Fatal("no block of the plan has three scans")
+	}
+	mine = mine[:3]
+	tel := c.TelescopeByCode(block.Telescope)
+	night, err := NightAt(tel, block.Start)
+	if err != nil {
+		t.Fatal(err)
+	}
+	gap := mine[2].Start
+	for name, x := range map[string]struct {
+		lost   []scheduler.Span
+		begins [3]bool
+	}{
+		"no loss":      {nil, [3]bool{true, false, false}},
+		"loss between": {[]scheduler.Span{{Start: gap.Add(-10 * time.Minute), End: gap}}, [3]bool{true, false, true}},
+		"loss before":  {[]scheduler.Span{{Start: block.Start, End: mine[0].Start}}, [3]bool{true, false, false}},
+		"loss after":   {[]scheduler.Span{{Start: mine[2].End(), End: block.End}}, [3]bool{true, false, false}},
+	} {
+		block.Lost = x.lost
+		s, err := Build(Input{Campaign: c, Telescope: tel.Code, Night: night.Name, Scans: mine, Plan: PlanInfo{Week: "2027-W08", Revision: 1}})
+		if err != nil {
+			t.Fatal(err)
+		}
+		if s.PlanWeek != "2027-W08" {
+			t.Errorf("%s: the plan is of week %q", name, s.PlanWeek)
+		}
+		for _, b := range s.Blocks {
+			for i, y := range b.Scans {
+				if y.Begins != x.begins[i] || y.Begins && y.SlewS != 0 || !y.Begins && y.SlewS < tel.SettleS {
+					t.Errorf("%s: scan %d begins %v and is slewed to in %g s, want %v", name, i+1, y.Begins, y.SlewS, x.begins[i])
+				}
+			}
+		}
+	}
+}
+
 // Clocks change on 2027-03-28 and 2027-10-31 in Europe: those nights begin on
 // the day before and last 23 and 25 hours.
 func TestNightsAcrossClockChanges(t *testing.T) {

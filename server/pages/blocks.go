@@ -10,6 +10,7 @@ import (
 	"cadencewright/scheduler/almanac"
 	"cadencewright/server/runsheet"
 	"cadencewright/server/store"
+	"cadencewright/web/ui/plot"
 	"cadencewright/web/view"
 )
 
@@ -42,7 +43,9 @@ func blocks(v *view.Week, c *scheduler.Campaign, shown *shownPlan) error {
 		for _, s := range row.Scans {
 			used += int(s.End.Sub(s.Start).Minutes())
 		}
-		row.FreeMin = int(b.End.Sub(b.Start).Minutes()) - used - lostMinutes(b)
+		for _, s := range plot.Free(row) { // lost time and scans may overlap
+			row.FreeMin += s.Minutes()
+		}
 		if v.Plan != nil {
 			v.Plan.Free += row.FreeMin
 		}

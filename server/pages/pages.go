@@ -100,7 +100,7 @@ func ignoreGone(error) error { return nil }
 
 // Error is the page of a problem.
 func (p *Pages) Error(w http.ResponseWriter, r *http.Request, problem httperr.Problem) {
-	v := view.Error{Page: p.frame(r), Status: problem.Status, Title: problem.Title, Detail: problem.Detail, Request: problem.Instance}
+	v := view.Error{Page: p.frame(r), Status: problem.Status, Title: problem.Title, Detail: typeset(problem.Detail), Request: problem.Instance}
 	switch problem.Status {
 	case http.StatusNotFound:
 		v.Advice = "Check the address, or start from this week."
@@ -108,9 +108,11 @@ func (p *Pages) Error(w http.ResponseWriter, r *http.Request, problem httperr.Pr
 		v.Advice = "Go back to the week, look at what has changed, and decide again."
 	case http.StatusServiceUnavailable:
 		v.Advice = "Wait a few seconds and load the page again. Nothing you saved is lost."
+	case http.StatusForbidden, http.StatusConflict, http.StatusUnprocessableEntity, http.StatusRequestEntityTooLarge:
+		v.Advice = problem.Advice // the others' words are for programs
 	}
-	if len(problem.Errors) > 0 && problem.Detail == "see errors" {
-		v.Detail = problem.Errors[0].Pointer + ": " + problem.Errors[0].Detail
+	if n := len(problem.Errors); n > 1 { // of one, the detail tells
+		v.Detail += "; the first is " + problem.Errors[0].Pointer + ": " + typeset(problem.Errors[0].Detail)
 	}
 	if err := write(w, problem.Status, func(b io.Writer) error { return page.Error(b, v) }); err != nil {
 		http.Error(w, problem.Title, problem.Status)

@@ -81,7 +81,7 @@ func skyPanel(c *scheduler.Campaign, tel *scheduler.Telescope, src *scheduler.So
 		if i == len(samples)/2 {
 			v.SunDeg = s.SunDeg
 		}
-		if s.SunDeg < v.SunMinDeg {
+		if s.SunDeg < v.SunMinDeg && s.At.Before(to) {
 			v.NearSun = extend(v.NearSun, s.At, panelStep)
 		}
 	}
@@ -89,12 +89,12 @@ func skyPanel(c *scheduler.Campaign, tel *scheduler.Telescope, src *scheduler.So
 	// samples do: no search for the edges is needed.
 	up := 0
 	for _, s := range samples {
-		if s.Down == 0 {
+		if s.Down == 0 && s.At.Before(to) { // the last sample is the week's end
 			v.Up = extend(v.Up, s.At, panelStep)
 			up++
 		}
 	}
-	v.Verdict = verdict(samples, up, best, tel, v.SunMinDeg)
+	v.Verdict = verdict(samples[:len(samples)-1], up, best, tel, v.SunMinDeg)
 	for i := range c.Blocks {
 		if b := &c.Blocks[i]; b.Telescope == tel.Code && b.Start.Before(to) && b.End.After(from) {
 			v.Blocks = append(v.Blocks, view.Span{Start: b.Start, End: b.End})

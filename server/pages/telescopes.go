@@ -30,32 +30,37 @@ func (p *Pages) Telescopes(w http.ResponseWriter, r *http.Request) error {
 	}
 	v := view.Telescopes{Page: f, Week: scheduler.WeekName(from)}
 	for i := range c.Telescopes {
-		t := &c.Telescopes[i]
-		row := view.TelescopeRow{Code: t.Code, Name: t.Name, LongitudeDeg: t.LongitudeDeg, LatitudeDeg: t.LatitudeDeg, Mount: string(t.Mount)}
-		for j := range t.Receivers {
-			row.Receivers = append(row.Receivers, t.Receivers[j].Code)
-		}
-		for j := range c.Blocks {
-			b := &c.Blocks[j]
-			if b.Telescope != t.Code {
-				continue
-			}
-			if !b.Start.Before(from) && b.Start.Before(to) {
-				row.WeekBlocks++
-				row.WeekHours += b.Duration().Hours()
-			}
-			if b.End.After(f.Now) && (row.Next.IsZero() || b.Start.Before(row.Next)) {
-				row.Next = b.Start
-			}
-		}
-		for j := range live {
-			if live[j].Telescope == t.Code && live[j].State != store.ScanDropped {
-				row.UsedHours += float64(live[j].Minutes) / 60
-			}
-		}
-		v.Rows = append(v.Rows, row)
+		v.Rows = append(v.Rows, telescopeRow(c, &c.Telescopes[i], live, from, f.Now))
 	}
 	return write(w, http.StatusOK, func(b io.Writer) error { return page.Telescopes(b, v) })
+}
+
+// telescopeRow is a telescope's line for the week that begins at from.
+func telescopeRow(c *scheduler.Campaign, t *scheduler.Telescope, live []store.StoredScan, from, now time.Time) view.TelescopeRow {
+	to := from.AddDate(0, 0, 7)
+	row := view.TelescopeRow{Code: t.Code, Name: t.Name, LongitudeDeg: t.LongitudeDeg, LatitudeDeg: t.LatitudeDeg, Mount: string(t.Mount)}
+	for j := range t.Receivers {
+		row.Receivers = append(row.Receivers, t.Receivers[j].Code)
+	}
+	for j := range c.Blocks {
+		b := &c.Blocks[j]
+		if b.Telescope != t.Code {
+			continue
+		}
+		if !b.Start.Before(from) && b.Start.Before(to) {
+			row.WeekBlocks++
+			row.WeekHours += b.Duration().Hours()
+		}
+		if b.End.After(now) && (row.Next.IsZero() || b.Start.Before(row.Next)) {
+			row.Next = b.Start
+		}
+	}
+	for j := range live {
+		if live[j].Telescope == t.Code && live[j].State != store.ScanDropped {
+			row.UsedHours += float64(live[j].Minutes) / 60
+		}
+	}
+	return row
 }
 
 // Telescope is the page of one telescope.
